@@ -1,1 +1,1 @@
-//! (layer)
+//! Layer under construction.
