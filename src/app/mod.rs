@@ -1,1 +1,3 @@
-//! Layer under construction.
+//! The window: draws, edits shapes, asks the worker. The only layer that knows egui.
+
+pub mod words;
