@@ -1,7 +1,20 @@
 //! Flow and heat: fluids, conditions at ports and walls, the equations, the figures and their validity.
 
+pub mod cells;
 pub mod conditions;
+pub mod error;
+pub mod flow;
+pub mod flow_assembly;
+pub mod flow_system;
 pub mod fluid;
+pub mod heat;
+pub mod heat_system;
+pub mod solve;
 
+pub use cells::Cells;
 pub use conditions::{FlowCondition, ThermalCondition};
+pub use error::PhysicsError;
+pub use flow_system::FlowSystem;
 pub use fluid::Fluid;
+pub use heat_system::HeatSystem;
+pub use solve::{Discretisation, Problem, State, solve};
