@@ -3,7 +3,7 @@
 //! Source: Deuflhard, Newton Methods for Nonlinear Problems (Springer, 2004), chapter 3: damping by halving
 //! until the residual falls.
 
-use super::{FemError, Linearised};
+use super::{FemError, Layout, Linearised};
 use crate::base::Watch;
 
 /// Residual relative to the sum of its parts below which a state is solved. The parts cancel to about 1e-15,
@@ -25,6 +25,42 @@ pub struct Residual {
 }
 
 impl Residual {
+    /// Sum the element residuals: the first `layout.local` numbers of each of `slots` (`stride` apart).
+    pub fn gather(layout: &Layout, slots: &[f64], stride: usize) -> Self {
+        let mut rows = vec![0.0; layout.total];
+        let mut parts = 0.0;
+        for e in 0..layout.elements {
+            let own = &slots[e * stride..e * stride + layout.local];
+            for (&n, &r) in layout.element(e).iter().zip(own) {
+                rows[n as usize] += r;
+                let scaled = r * layout.scale[n as usize];
+                parts += scaled * scaled;
+            }
+        }
+        let free = |(n, r): (usize, &f64)| {
+            if layout.fixed[n] {
+                0.0
+            } else {
+                (r * layout.scale[n]).powi(2)
+            }
+        };
+        let norm = rows.iter().enumerate().map(free).sum::<f64>().sqrt();
+        Self {
+            rows,
+            norm,
+            parts: parts.sqrt(),
+        }
+    }
+
+    /// The element matrices that stand behind the residuals in `slots`.
+    pub fn matrices(layout: &Layout, slots: &[f64], stride: usize) -> Vec<f64> {
+        slots
+            .chunks(stride)
+            .flat_map(|slot| &slot[layout.local..])
+            .copied()
+            .collect()
+    }
+
     /// Norm relative to the parts.
     pub fn relative(&self) -> f64 {
         if self.parts > 0.0 {

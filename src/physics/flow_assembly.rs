@@ -225,53 +225,22 @@ impl FlowOn<'_> {
             }
         }
     }
-
-    fn gather(&self, slots: &[f64], stride: usize) -> Residual {
-        let layout = &self.system.layout;
-        let mut rows = vec![0.0; layout.total];
-        let mut parts = 0.0;
-        for e in 0..layout.elements {
-            let own = &slots[e * stride..e * stride + layout.local];
-            for (&n, &r) in layout.element(e).iter().zip(own) {
-                rows[n as usize] += r;
-                let scaled = r * layout.scale[n as usize];
-                parts += scaled * scaled;
-            }
-        }
-        let free = |(n, r): (usize, &f64)| {
-            if layout.fixed[n] {
-                0.0
-            } else {
-                (r * layout.scale[n]).powi(2)
-            }
-        };
-        let norm = rows.iter().enumerate().map(free).sum::<f64>().sqrt();
-        Residual {
-            rows,
-            norm,
-            parts: parts.sqrt(),
-        }
-    }
 }
 
 impl Nonlinear for FlowOn<'_> {
     fn residual(&self, x: &[f64]) -> Residual {
         let (slots, stride) = self.elements(x, false);
-        self.gather(&slots, stride)
+        Residual::gather(&self.system.layout, &slots, stride)
     }
 
     fn linearise(&self, x: &[f64], watch: &Watch) -> Result<(Residual, Linearised), FemError> {
+        let layout = &self.system.layout;
         let (slots, stride) = self.elements(x, true);
         watch.check()?;
-        let residual = self.gather(&slots, stride);
-        let local = self.system.layout.local;
-        let mut matrices = Vec::with_capacity(self.system.layout.elements * local * local);
-        for slot in slots.chunks(stride) {
-            matrices.extend_from_slice(&slot[local..]);
-        }
+        let residual = Residual::gather(layout, &slots, stride);
         Ok((
             residual,
-            Linearised::new(&self.system.layout, matrices, watch)?,
+            Linearised::new(layout, Residual::matrices(layout, &slots, stride), watch)?,
         ))
     }
 }

@@ -60,6 +60,8 @@ pub struct HeatSystem {
     pub media: Vec<Medium>,
     /// Boundaries with flux terms.
     pub fluxes: Vec<FluxBoundary>,
+    /// Curve whose fixed temperature holds at each node, if any, shape `(total,)`.
+    pub owner: Vec<Option<BoundaryTag>>,
     /// Fixed temperatures in place, a mean elsewhere, shape `(total,)`.
     pub start: Vec<f64>,
 }
@@ -76,7 +78,7 @@ impl HeatSystem {
         media: Vec<Medium>,
     ) -> Result<Self, FemError> {
         let total = cells.node_count;
-        let mut fixed = vec![false; total];
+        let mut owner = vec![None; total];
         let mut start = vec![f64::NAN; total];
         // Ports first, walls after: where they meet, the wall's temperature holds.
         for walls in [false, true] {
@@ -90,7 +92,7 @@ impl HeatSystem {
                 for (triangle, edge) in cells.edges_on(*tag) {
                     for local in cells.edge_locals(edge) {
                         let node = cells.element(triangle)[local] as usize;
-                        fixed[node] = true;
+                        owner[node] = Some(*tag);
                         start[node] = temperature_k;
                     }
                 }
@@ -106,6 +108,7 @@ impl HeatSystem {
                 *t = mean;
             }
         }
+        let fixed = owner.iter().map(Option::is_some).collect();
         let numbers = cells.nodes.to_vec();
         let local = cells.table.functions;
         let layout = Layout::new(
@@ -251,50 +254,22 @@ impl HeatOn<'_> {
             }
         }
     }
-
-    fn gather(&self, slots: &[f64], stride: usize) -> Residual {
-        let layout = &self.system.layout;
-        let mut rows = vec![0.0; layout.total];
-        let mut parts = 0.0;
-        for e in 0..layout.elements {
-            let own = &slots[e * stride..e * stride + layout.local];
-            for (&n, &r) in layout.element(e).iter().zip(own) {
-                rows[n as usize] += r;
-                parts += r * r;
-            }
-        }
-        let norm = rows
-            .iter()
-            .zip(&layout.fixed)
-            .map(|(r, &fixed)| if fixed { 0.0 } else { r * r })
-            .sum::<f64>()
-            .sqrt();
-        Residual {
-            rows,
-            norm,
-            parts: parts.sqrt(),
-        }
-    }
 }
 
 impl Nonlinear for HeatOn<'_> {
     fn residual(&self, x: &[f64]) -> Residual {
         let (slots, stride) = self.elements(x, false);
-        self.gather(&slots, stride)
+        Residual::gather(&self.system.layout, &slots, stride)
     }
 
     fn linearise(&self, x: &[f64], watch: &Watch) -> Result<(Residual, Linearised), FemError> {
+        let layout = &self.system.layout;
         let (slots, stride) = self.elements(x, true);
         watch.check()?;
-        let residual = self.gather(&slots, stride);
-        let local = self.system.layout.local;
-        let mut matrices = Vec::with_capacity(self.system.layout.elements * local * local);
-        for slot in slots.chunks(stride) {
-            matrices.extend_from_slice(&slot[local..]);
-        }
+        let residual = Residual::gather(layout, &slots, stride);
         Ok((
             residual,
-            Linearised::new(&self.system.layout, matrices, watch)?,
+            Linearised::new(layout, Residual::matrices(layout, &slots, stride), watch)?,
         ))
     }
 }

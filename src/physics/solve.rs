@@ -13,7 +13,7 @@ use crate::fem::newton::{self, Nonlinear};
 use crate::fem::{FemError, Linearised};
 use crate::geometry::BoundaryTag;
 use crate::mesh::CurvedMesh;
-use std::sync::Arc;
+use std::sync::{Arc, OnceLock};
 
 /// What is to be solved, apart from the mesh.
 #[derive(Clone, Debug, PartialEq)]
@@ -129,8 +129,7 @@ pub struct State {
     pub flow_reactions: Vec<f64>,
     /// Residual rows of heat: reactions at fixed unknowns.
     pub heat_reactions: Vec<f64>,
-    /// Factorised Jacobian of the flow at the state.
-    pub flow_jacobian: Linearised,
+    flow_jacobian: OnceLock<Linearised>,
     /// Factorised Jacobian of heat at the state.
     pub heat_jacobian: Linearised,
 }
@@ -161,7 +160,6 @@ pub fn solve_flow(
     let (mut x, mut steps) = newton::solve(&on(0.0), system.start.clone(), watch)?;
     // Continuation: the fraction of the inertia grows by a factor that adapts to success.
     let (mut reached, mut next) = (0.0, 1.0);
-    let mut last_residual = 1.0;
     while reached < 1.0 {
         match newton::solve(&on(next), x.clone(), watch) {
             Ok((solved, taken)) => {
@@ -180,7 +178,6 @@ pub fn solve_flow(
                 steps: taken,
             }) => {
                 steps += taken;
-                last_residual = residual;
                 next = if reached > 0.0 {
                     (reached * next).sqrt()
                 } else {
@@ -215,32 +212,27 @@ pub fn solve(
     watch: &Watch,
 ) -> Result<State, PhysicsError> {
     let (flow, newton_steps) = solve_flow(discretisation, &mesh, start, watch)?;
-    let on = FlowOn {
-        system: &discretisation.flow,
-        mesh: &mesh,
-        inertia: 1.0,
-    };
-    let (flow_residual, flow_jacobian) = on.linearise(&flow, watch)?;
-    solve_heat(
-        discretisation,
-        mesh,
-        flow,
-        newton_steps,
-        flow_residual.rows,
-        flow_jacobian,
-        watch,
-    )
+    solve_heat(discretisation, mesh, flow, newton_steps, watch)
 }
 
-fn solve_heat(
+/// Heat in a solved flow: linear, one solve.
+///
+/// # Errors
+/// From the factorisation; [`PhysicsError::NotFinite`].
+pub fn solve_heat(
     discretisation: &Arc<Discretisation>,
     mesh: CurvedMesh,
     flow: Vec<f64>,
     newton_steps: usize,
-    flow_reactions: Vec<f64>,
-    flow_jacobian: Linearised,
     watch: &Watch,
 ) -> Result<State, PhysicsError> {
+    let flow_reactions = FlowOn {
+        system: &discretisation.flow,
+        mesh: &mesh,
+        inertia: 1.0,
+    }
+    .residual(&flow)
+    .rows;
     let velocity: Vec<[f64; 2]> = (0..discretisation.cells.node_count)
         .map(|i| discretisation.flow.velocity(&flow, i))
         .collect();
@@ -270,7 +262,26 @@ fn solve_heat(
         newton_steps,
         flow_reactions,
         heat_reactions,
-        flow_jacobian,
+        flow_jacobian: OnceLock::new(),
         heat_jacobian,
     })
+}
+
+impl State {
+    /// Factorised Jacobian of the flow at the state: computed at the first call, for adjoints.
+    ///
+    /// # Errors
+    /// From the factorisation, or the watch's stop.
+    pub fn flow_jacobian(&self, watch: &Watch) -> Result<&Linearised, PhysicsError> {
+        if let Some(ready) = self.flow_jacobian.get() {
+            return Ok(ready);
+        }
+        let on = FlowOn {
+            system: &self.discretisation.flow,
+            mesh: &self.mesh,
+            inertia: 1.0,
+        };
+        let (_, jacobian) = on.linearise(&self.flow, watch)?;
+        Ok(self.flow_jacobian.get_or_init(|| jacobian))
+    }
 }
