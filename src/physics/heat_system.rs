@@ -128,6 +128,7 @@ impl HeatSystem {
             layout: Arc::new(layout),
             media,
             fluxes,
+            owner,
             start,
         })
     }

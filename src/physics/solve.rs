@@ -49,23 +49,18 @@ impl Problem {
 
     fn media(&self) -> Vec<Medium> {
         let fluid = &self.fluid;
-        let mut media = vec![Medium {
+        let fluid = Medium {
             capacity_j_m3_k: fluid.density_kg_m3 * fluid.heat_capacity_j_kg_k,
             conductivity_w_m_k: fluid.conductivity_w_m_k,
             source_w_m3: 0.0,
-        }];
-        media.extend(self.insert_thermal.iter().map(|c| match *c {
-            ThermalCondition::Solid {
-                conductivity_w_m_k,
-                source_w_m3,
-            } => Medium {
-                capacity_j_m3_k: 0.0,
-                conductivity_w_m_k,
-                source_w_m3,
-            },
-            _ => media[0],
-        }));
-        media
+        };
+        let solids = self.insert_thermal.iter().map(|c| match *c {
+            ThermalCondition::Solid { conductivity_w_m_k, source_w_m3 } => {
+                Medium { capacity_j_m3_k: 0.0, conductivity_w_m_k, source_w_m3 }
+            }
+            _ => fluid,
+        });
+        std::iter::once(fluid).chain(solids).collect()
     }
 }
 
@@ -186,7 +181,7 @@ pub fn solve_flow(
                 if next < SMALLEST_INERTIA || (reached > 0.0 && next / reached < SMALLEST_RATIO) {
                     return Err(PhysicsError::Stalled {
                         fraction: reached,
-                        residual: last_residual,
+                        residual,
                     });
                 }
             }
