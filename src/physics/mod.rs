@@ -9,6 +9,7 @@ pub mod flow_system;
 pub mod fluid;
 pub mod heat;
 pub mod heat_system;
+pub mod measures;
 pub mod solve;
 
 pub use cells::Cells;

@@ -55,9 +55,14 @@ impl Problem {
             source_w_m3: 0.0,
         };
         let solids = self.insert_thermal.iter().map(|c| match *c {
-            ThermalCondition::Solid { conductivity_w_m_k, source_w_m3 } => {
-                Medium { capacity_j_m3_k: 0.0, conductivity_w_m_k, source_w_m3 }
-            }
+            ThermalCondition::Solid {
+                conductivity_w_m_k,
+                source_w_m3,
+            } => Medium {
+                capacity_j_m3_k: 0.0,
+                conductivity_w_m_k,
+                source_w_m3,
+            },
             _ => fluid,
         });
         std::iter::once(fluid).chain(solids).collect()
