@@ -2,6 +2,7 @@
 
 pub mod curved;
 pub mod reference;
+pub mod structured;
 pub mod tri_mesh;
 
 pub use curved::{BoundaryNode, CurvedMesh};
