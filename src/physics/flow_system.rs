@@ -91,6 +91,15 @@ impl FlowSystem {
                 }
             }
         }
+        if !conditions.iter().any(|c| {
+            matches!(
+                c,
+                FlowCondition::TotalPressure { .. } | FlowCondition::StaticPressure { .. }
+            )
+        }) {
+            // Velocity is given all round: the level of the pressure is free and set to zero at one node.
+            fixed[2 * nodes + cells.pressure_element(cells.fluid[0] as usize)[0] as usize] = true;
+        }
         let cell = (mesh_area(mesh, cells) / cells.mesh.triangles.len() as f64).sqrt();
         let mut scale = vec![1.0; total];
         scale[2 * nodes..].fill(viscosity / cell);
