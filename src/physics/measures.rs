@@ -279,3 +279,30 @@ pub fn convected_heat(state: &State, port: BoundaryTag, reference_k: f64) -> Mea
         -((at.t + -reference_k) * at.outflow() * capacity)
     })
 }
+
+/// Area of a region of the mesh, m^2.
+pub fn region_area(state: &State, region: u16) -> Measured {
+    let cells = &state.discretisation.cells;
+    let table = &cells.table;
+    let mut measured = Measured::constant(0.0);
+    measured.nodes = vec![Vec2::ZERO; cells.node_count];
+    for triangle in 0..cells.mesh.triangles.len() {
+        if cells.mesh.regions[triangle] != region {
+            continue;
+        }
+        for q in 0..table.points {
+            let map = PointMap::new(&state.mesh, triangle, table, q);
+            let weight = table.weights[q];
+            measured.value += weight * map.determinant;
+            let f = &map.jacobian;
+            let (by_x, by_y) = table.derivative_rows(q);
+            for (i, &node) in cells.element(triangle).iter().enumerate() {
+                measured.nodes[node as usize] += Vec2 {
+                    x: weight * (f[1][1] * by_x[i] - f[1][0] * by_y[i]),
+                    y: weight * (f[0][0] * by_y[i] - f[0][1] * by_x[i]),
+                };
+            }
+        }
+    }
+    measured
+}

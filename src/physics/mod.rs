@@ -3,6 +3,7 @@
 pub mod cells;
 pub mod conditions;
 pub mod error;
+pub mod figures;
 pub mod flow;
 pub mod flow_assembly;
 pub mod flow_system;
@@ -10,6 +11,7 @@ pub mod fluid;
 pub mod heat;
 pub mod heat_system;
 pub mod measures;
+pub mod quantities;
 pub mod solve;
 
 pub use cells::Cells;
@@ -18,4 +20,5 @@ pub use error::PhysicsError;
 pub use flow_system::FlowSystem;
 pub use fluid::Fluid;
 pub use heat_system::HeatSystem;
+pub use quantities::Quantities;
 pub use solve::{Discretisation, Problem, State, solve};
