@@ -2,6 +2,7 @@
 
 pub mod design;
 pub mod engine;
+pub mod picture;
 pub mod report;
 pub mod snapshot;
 
