@@ -3,7 +3,8 @@
 //! Each arrow is the transpose of one that the state used: heat, flow, node places, mesh motion, spline.
 
 pub mod adjoint;
-
+pub mod chain;
 pub mod node_derivative;
 
 pub use adjoint::shape_gradient;
+pub use chain::ControlChain;
