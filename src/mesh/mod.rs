@@ -3,6 +3,7 @@
 pub mod curved;
 pub mod error;
 pub mod generate;
+pub mod locate;
 pub mod motion;
 pub mod reference;
 pub mod sizing;
@@ -13,6 +14,7 @@ mod triangulate;
 pub use curved::{BoundaryNode, CurvedMesh};
 pub use error::MeshError;
 pub use generate::generate;
+pub use locate::Locator;
 pub use motion::Motion;
 pub use sizing::{Fineness, MeshSettings};
 pub use tri_mesh::{BoundaryEdge, TriMesh};

@@ -294,15 +294,58 @@ pub fn region_area(state: &State, region: u16) -> Measured {
             let map = PointMap::new(&state.mesh, triangle, table, q);
             let weight = table.weights[q];
             measured.value += weight * map.determinant;
-            let f = &map.jacobian;
             let (by_x, by_y) = table.derivative_rows(q);
             for (i, &node) in cells.element(triangle).iter().enumerate() {
-                measured.nodes[node as usize] += Vec2 {
-                    x: weight * (f[1][1] * by_x[i] - f[1][0] * by_y[i]),
-                    y: weight * (f[0][0] * by_y[i] - f[0][1] * by_x[i]),
-                };
+                measured.nodes[node as usize] += by_node(&map, by_x[i], by_y[i]) * weight;
             }
         }
     }
     measured
+}
+
+/// Temperature integrated over a region, K m^2.
+pub fn region_temperature(state: &State, region: u16) -> Measured {
+    let cells = &state.discretisation.cells;
+    let table = &cells.table;
+    let mut measured = Measured::constant(0.0);
+    measured.heat = vec![0.0; cells.node_count];
+    measured.nodes = vec![Vec2::ZERO; cells.node_count];
+    for triangle in (0..cells.mesh.triangles.len()).filter(|&t| cells.mesh.regions[t] == region) {
+        for q in 0..table.points {
+            let map = PointMap::new(&state.mesh, triangle, table, q);
+            let weight = table.weights[q];
+            let values = table.value_row(q);
+            let nodes = cells.element(triangle);
+            let t: f64 = nodes
+                .iter()
+                .zip(values)
+                .map(|(&n, v)| v * state.temperature[n as usize])
+                .sum();
+            measured.value += weight * map.determinant * t;
+            let (by_x, by_y) = table.derivative_rows(q);
+            for (i, &node) in nodes.iter().enumerate() {
+                let node = node as usize;
+                measured.heat[node] += weight * map.determinant * values[i];
+                measured.nodes[node] += by_node(&map, by_x[i], by_y[i]) * (weight * t);
+            }
+        }
+    }
+    measured
+}
+
+/// Temperature of a node that moves with the mesh, K.
+pub fn node_temperature(state: &State, node: usize) -> Measured {
+    let mut measured = Measured::constant(state.temperature[node]);
+    measured.heat = vec![0.0; state.discretisation.cells.node_count];
+    measured.heat[node] = 1.0;
+    measured
+}
+
+/// Derivative of det F by the place of a node with these reference derivatives.
+fn by_node(map: &PointMap, by_x: f64, by_y: f64) -> Vec2 {
+    let f = &map.jacobian;
+    Vec2 {
+        x: f[1][1] * by_x - f[1][0] * by_y,
+        y: f[0][0] * by_y - f[0][1] * by_x,
+    }
 }
