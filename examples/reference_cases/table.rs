@@ -53,7 +53,8 @@ pub fn rows(
     order: usize,
 ) -> Result<(Vec<Row>, usize, usize), String> {
     let start = std::time::Instant::now();
-    let settings = MeshSettings::preset(fineness, order);
+    let mut settings = MeshSettings::preset(fineness, order);
+    settings.jumps = flumeloft::physics::hints::thermal_jumps(&case.problem, &case.domain.outline);
     let mesh = generate(&case.domain, &settings, &Watch::idle()).map_err(|e| e.to_string())?;
     let triangles = mesh.mesh.triangles.len();
     let discretisation =

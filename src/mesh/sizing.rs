@@ -25,6 +25,10 @@ pub struct MeshSettings {
     pub port_corner: f64,
     /// Size at re-entrant corners of the outline, relative to the far size.
     pub reentrant_corner: f64,
+    /// Size at the places in `jumps`, relative to the far size.
+    pub jump: f64,
+    /// Places where a condition jumps along a wall, m.
+    pub jumps: Vec<Vec2>,
     /// Growth around corners (geometric grading towards a point).
     pub corner_growth: f64,
     /// Size along insert contours relative to what `cells_around` gives.
@@ -67,6 +71,8 @@ impl MeshSettings {
             growth: 0.28 / f.clamp(0.8, 1.5),
             port_corner: 0.16 / f,
             reentrant_corner: 0.05 / f,
+            jump: 0.03 / f,
+            jumps: Vec::new(),
             corner_growth: 0.45,
             insert_factor: 1.0,
             extra: Vec::new(),
@@ -118,6 +124,11 @@ impl Sizing {
             }
         }
         sizing.corner_seeds(domain, settings, far);
+        for &place in &settings.jumps {
+            sizing
+                .seeds
+                .push((place, far * settings.jump, settings.corner_growth));
+        }
         for &(place, size) in &settings.extra {
             sizing.seeds.push((place, size, settings.corner_growth));
         }

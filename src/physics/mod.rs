@@ -10,6 +10,7 @@ pub mod flow_system;
 pub mod fluid;
 pub mod heat;
 pub mod heat_system;
+pub mod hints;
 pub mod measures;
 pub mod quantities;
 pub mod solve;
