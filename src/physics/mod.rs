@@ -14,6 +14,7 @@ pub mod hints;
 pub mod measures;
 pub mod quantities;
 pub mod solve;
+pub mod validity;
 
 pub use cells::Cells;
 pub use conditions::{FlowCondition, ThermalCondition};
