@@ -2,6 +2,10 @@
 
 pub mod design;
 pub mod engine;
+pub mod file;
+#[cfg(test)]
+mod file_tests;
+mod json_layout;
 mod mailbox;
 pub mod protocol;
 pub mod report;
@@ -17,6 +21,7 @@ pub use design::{
     Accuracy, Aim, Design, DuctPiece, Insert, Limit, Project, RunSettings, VERSION, Variant,
 };
 pub use engine::{Case, Engine, Failure, Improved, Solved, StepRecord, StopReason};
+pub use file::FileError;
 pub use protocol::{Event, Message, Request, RunId};
 pub use report::{
     Balance, Caution, CautionLevel, ImproveReport, InsertReport, LimitReport, Seconds, SolveReport,
