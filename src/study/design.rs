@@ -8,6 +8,21 @@ use serde::{Deserialize, Serialize};
 /// Version of the file format written by this program.
 pub const VERSION: u32 = 1;
 
+/// Most pieces of an outline: far more than a drawing needs; bounds time and memory of its checks.
+pub const MOST_PIECES: usize = 500;
+/// Most inserts (also in a variant), for the same reason.
+pub const MOST_INSERTS: usize = 100;
+/// Most control points of an insert or points of a spline, for the same reason.
+pub const MOST_POINTS: usize = 500;
+/// Most limits.
+pub const MOST_LIMITS: usize = 200;
+/// Most kept alternatives.
+pub const MOST_VARIANTS: usize = 200;
+/// Longest name, characters: still fits a line on the screen.
+pub const MOST_CHARACTERS_IN_NAME: usize = 200;
+/// Longest notes, characters: some thirty pages.
+pub const MOST_NOTES: usize = 100_000;
+
 /// A study as stored in one JSON file.
 #[derive(Clone, Debug, PartialEq, Serialize, Deserialize)]
 #[serde(deny_unknown_fields)]

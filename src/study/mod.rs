@@ -2,13 +2,35 @@
 
 pub mod design;
 pub mod engine;
+pub mod file;
+#[cfg(test)]
+mod file_tests;
+mod json_layout;
+mod mailbox;
 pub mod picture;
+pub mod protocol;
 pub mod report;
 pub mod snapshot;
+pub mod stand_in;
+#[cfg(test)]
+pub(crate) mod test_design;
+pub mod worker;
+#[cfg(test)]
+mod worker_tests;
 
-pub use design::{Accuracy, Aim, Design, DuctPiece, Insert, Limit, Project, RunSettings, Variant};
+pub use design::{
+    Accuracy, Aim, Design, DuctPiece, Insert, Limit, Project, RunSettings, VERSION, Variant,
+};
 pub use engine::{Case, Engine, Failure, Improved, Solved, StepRecord, StopReason};
+pub use file::FileError;
+pub use protocol::{Event, Message, Request, RunId};
 pub use report::{
     Balance, Caution, CautionLevel, ImproveReport, InsertReport, LimitReport, Seconds, SolveReport,
 };
 pub use snapshot::{FieldSnapshot, LineProfile};
+pub use worker::Worker;
+
+/// The engine that the window and the command line compute with.
+pub fn new_engine() -> Box<dyn Engine> {
+    Box::new(stand_in::StandIn::default())
+}
