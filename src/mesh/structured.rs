@@ -16,6 +16,19 @@ pub fn mapped_square(
     order: usize,
     map: impl Fn(Vec2) -> Vec2,
 ) -> CurvedMesh {
+    mapped_channel([0, columns], rows, order, map)
+}
+
+/// As [`mapped_square`], with bottom and top cut after the first columns: those before have pieces 4 (bottom)
+/// and 5 (top), those behind pieces 0 and 2.
+pub fn mapped_channel(
+    columns: [usize; 2],
+    rows: usize,
+    order: usize,
+    map: impl Fn(Vec2) -> Vec2,
+) -> CurvedMesh {
+    let cut = columns[0] as f64 / (columns[0] + columns[1]) as f64;
+    let columns = columns[0] + columns[1];
     let number = |i: usize, j: usize| (j * (columns + 1) + i) as u32;
     let unit = |i: usize, j: usize| vec2(i as f64 / columns as f64, j as f64 / rows as f64);
     let mut flat = Vec::with_capacity((columns + 1) * (rows + 1));
@@ -43,11 +56,14 @@ pub fn mapped_square(
     }
     let piece = |a: Vec2, b: Vec2| -> Option<(u32, [f64; 2])> {
         if a.y == 0.0 && b.y == 0.0 {
-            Some((0, [a.x, b.x]))
+            Some((if a.x.max(b.x) <= cut { 4 } else { 0 }, [a.x, b.x]))
         } else if a.x == 1.0 && b.x == 1.0 {
             Some((1, [a.y, b.y]))
         } else if a.y == 1.0 && b.y == 1.0 {
-            Some((2, [1.0 - a.x, 1.0 - b.x]))
+            Some((
+                if a.x.max(b.x) <= cut { 5 } else { 2 },
+                [1.0 - a.x, 1.0 - b.x],
+            ))
         } else if a.x == 0.0 && b.x == 0.0 {
             Some((3, [1.0 - a.y, 1.0 - b.y]))
         } else {

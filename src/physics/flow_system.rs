@@ -274,7 +274,7 @@ fn stricter(a: Freedom, b: Freedom) -> Freedom {
     }
 }
 
-/// Parabolic inflow along a piece: u = -6 U s (1 - s) n with s the arc fraction, scaled so that the discrete
+/// Parabolic inflow along a piece: u = -6 U s (1 - s) n with s the fraction of the arc through the nodes, scaled so that the discrete
 /// flow rate is the given one to the last digit.
 fn parabola(
     mesh: &CurvedMesh,
@@ -283,20 +283,25 @@ fn parabola(
     flow_rate: f64,
     freedoms: &mut [Freedom],
 ) {
-    let mut profile = Vec::new();
-    let (lowest, highest) = cells
-        .mesh
-        .boundary
+    let mut along: Vec<(f64, usize)> = mesh
+        .boundary_nodes
         .iter()
         .filter(|b| b.tag == tag)
-        .fold((f64::INFINITY, f64::NEG_INFINITY), |(low, high), b| {
-            (low.min(b.t[0]).min(b.t[1]), high.max(b.t[0]).max(b.t[1]))
-        });
-    let mut inward = vec![None; cells.node_count];
-    for boundary in mesh.boundary_nodes.iter().filter(|b| b.tag == tag) {
-        let s = (boundary.t - lowest) / (highest - lowest);
-        profile.push((boundary.node as usize, 6.0 * s * (1.0 - s)));
+        .map(|b| (b.t, b.node as usize))
+        .collect();
+    along.sort_by(|a, b| a.0.total_cmp(&b.0));
+    let mut arc = vec![0.0];
+    for pair in along.windows(2) {
+        let chord = mesh.nodes[pair[0].1].distance(mesh.nodes[pair[1].1]);
+        arc.push(arc[arc.len() - 1] + chord);
     }
+    let length = arc[arc.len() - 1];
+    let profile: Vec<(usize, f64)> = along
+        .iter()
+        .zip(&arc)
+        .map(|(&(_, node), &a)| (node, 6.0 * a / length * (1.0 - a / length)))
+        .collect();
+    let mut inward = vec![None; cells.node_count];
     let mut carried = 0.0;
     for (triangle, edge) in cells.edges_on(tag) {
         let table = &cells.edge_table.edges[edge];
