@@ -65,7 +65,7 @@ impl MeshSettings {
         Self {
             order,
             cells_across: 3.4 * f,
-            cells_around: 20.0 * f.max(0.5),
+            cells_around: 28.0 * f.max(0.5),
             turn_rad: 0.45 / f.max(0.7),
             cells_in_gap: 1.6 * f,
             growth: 0.28 / f.clamp(0.8, 1.5),
