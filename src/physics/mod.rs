@@ -2,6 +2,7 @@
 
 pub mod conditions;
 pub mod fluid;
+pub mod tables;
 
 pub use conditions::{FlowCondition, ThermalCondition};
 pub use fluid::Fluid;
