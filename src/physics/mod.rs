@@ -15,6 +15,7 @@ pub mod measures;
 pub mod quantities;
 pub mod solve;
 pub mod validity;
+pub mod tables;
 
 pub use cells::Cells;
 pub use conditions::{FlowCondition, ThermalCondition};

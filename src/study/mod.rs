@@ -1,7 +1,9 @@
 //! The engine's face: project file, cases, runs and the worker. The window and the command line use only this.
 
+mod case;
 pub mod design;
 pub mod engine;
+pub mod fault;
 pub mod file;
 #[cfg(test)]
 mod file_tests;
@@ -14,6 +16,11 @@ pub mod snapshot;
 pub mod stand_in;
 #[cfg(test)]
 pub(crate) mod test_design;
+mod validate;
+mod validate_limits;
+mod validate_ports;
+#[cfg(test)]
+mod validate_tests;
 pub mod worker;
 #[cfg(test)]
 mod worker_tests;
@@ -22,6 +29,7 @@ pub use design::{
     Accuracy, Aim, Design, DuctPiece, Insert, Limit, Project, RunSettings, VERSION, Variant,
 };
 pub use engine::{Case, Engine, Failure, Improved, Solved, StepRecord, StopReason};
+pub use fault::Fault;
 pub use file::FileError;
 pub use protocol::{Event, Message, Request, RunId};
 pub use report::{
