@@ -1,10 +1,18 @@
 //! Curves, contours and the duct: exact, cheap, answers inside one frame. Lengths in metres.
 
+pub mod check;
+pub mod contour;
 pub mod curve;
 pub mod domain;
+pub mod limits;
+pub mod measure;
 mod open_spline;
 pub mod spline;
+pub mod starters;
 
+pub use check::{GeometryFault, check};
 pub use curve::{Curve, PieceShape, Segment};
 pub use domain::{BoundaryTag, Domain, DomainInsert, Outline, OutlinePiece};
+pub use measure::{InsertMeasures, insert_measures};
 pub use spline::ClosedSpline;
+pub use starters::Starter;

@@ -14,8 +14,8 @@ pub mod hints;
 pub mod measures;
 pub mod quantities;
 pub mod solve;
-pub mod validity;
 pub mod tables;
+pub mod validity;
 
 pub use cells::Cells;
 pub use conditions::{FlowCondition, ThermalCondition};
