@@ -1,1 +1,14 @@
-//! Layer under construction.
+//! What leaves the program: contour lists, tables, pictures. All in SI or with the unit in the name.
+
+pub mod colour;
+pub mod error;
+pub mod field;
+pub mod figure;
+mod lettering;
+mod painter;
+pub mod table;
+pub mod ticks;
+
+pub use error::ReportError;
+pub use field::Field;
+pub use figure::Figure;
