@@ -4,6 +4,7 @@ pub mod check;
 pub mod contour;
 pub mod curve;
 pub mod domain;
+pub mod h1;
 pub mod limits;
 pub mod measure;
 mod open_spline;
