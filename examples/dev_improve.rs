@@ -5,24 +5,89 @@ use flumeloft::physics::*;
 use flumeloft::study::*;
 use std::sync::Arc;
 fn main() {
-    let c = [vec2(0.0, 0.0), vec2(0.07, 0.0), vec2(0.07, 0.01), vec2(0.0, 0.01)];
+    let c = [
+        vec2(0.0, 0.0),
+        vec2(0.07, 0.0),
+        vec2(0.07, 0.01),
+        vec2(0.0, 0.01),
+    ];
     let names = ["floor", "outlet", "ceiling", "inlet"];
-    let duct = (0..4).map(|i| DuctPiece {
-        name: names[i].into(), to_m: c[(i + 1) % 4], shape: PieceShape::Line {},
-        flow: match i { 1 => FlowCondition::StaticPressure { pressure_pa: 0.0 }, 3 => FlowCondition::TotalPressure { pressure_pa: 0.06 }, _ => FlowCondition::Wall {} },
-        thermal: if i == 3 { ThermalCondition::FixedTemperature { temperature_k: 300.0 } } else { ThermalCondition::Adiabatic {} },
-    }).collect();
+    let duct = (0..4)
+        .map(|i| DuctPiece {
+            name: names[i].into(),
+            to_m: c[(i + 1) % 4],
+            shape: PieceShape::Line {},
+            flow: match i {
+                1 => FlowCondition::StaticPressure { pressure_pa: 0.0 },
+                3 => FlowCondition::TotalPressure { pressure_pa: 0.06 },
+                _ => FlowCondition::Wall {},
+            },
+            thermal: if i == 3 {
+                ThermalCondition::FixedTemperature {
+                    temperature_k: 300.0,
+                }
+            } else {
+                ThermalCondition::Adiabatic {}
+            },
+        })
+        .collect();
     let points = Starter::Circle { diameter_m: 0.004 }.controls(vec2(0.02, 0.005), 0.0, 20);
     let area = ClosedSpline::new(points.clone()).area();
     let design = Design {
-        fluid: Fluid { name: "air".into(), density_kg_m3: 1.177, viscosity_pa_s: 1.846e-5, conductivity_w_m_k: 0.0263, heat_capacity_j_kg_k: 1007.0 },
-        duct, inserts: vec![Insert { name: "tube".into(), points_m: points, frozen: false, thermal: ThermalCondition::FixedTemperature { temperature_k: 340.0 } }],
+        fluid: Fluid {
+            name: "air".into(),
+            density_kg_m3: 1.177,
+            viscosity_pa_s: 1.846e-5,
+            conductivity_w_m_k: 0.0263,
+            heat_capacity_j_kg_k: 1007.0,
+        },
+        duct,
+        inserts: vec![Insert {
+            name: "tube".into(),
+            points_m: points,
+            frozen: false,
+            thermal: ThermalCondition::FixedTemperature {
+                temperature_k: 340.0,
+            },
+        }],
         aim: Aim::MostHeat {},
-        limits: vec![Limit::Area { insert: None, equal_m2: None, at_least_m2: Some(area), at_most_m2: None }, Limit::WallGap { insert: None, at_least_m: 0.0015 }, Limit::CurvatureRadius { insert: None, at_least_m: 0.0004 }, Limit::Thickness { insert: None, at_least_m: 0.001 },
-          Limit::BoundingBox { insert: None, lower_left_m: vec2(0.012, 0.001), upper_right_m: vec2(0.03, 0.009) }],
+        limits: vec![
+            Limit::Area {
+                insert: None,
+                equal_m2: None,
+                at_least_m2: Some(area),
+                at_most_m2: None,
+            },
+            Limit::WallGap {
+                insert: None,
+                at_least_m: 0.0015,
+            },
+            Limit::CurvatureRadius {
+                insert: None,
+                at_least_m: 0.0004,
+            },
+            Limit::Thickness {
+                insert: None,
+                at_least_m: 0.001,
+            },
+            Limit::BoundingBox {
+                insert: None,
+                lower_left_m: vec2(0.012, 0.001),
+                upper_right_m: vec2(0.03, 0.009),
+            },
+        ],
     };
-    let steps = std::env::args().nth(1).and_then(|s| s.parse().ok()).unwrap_or(30);
-    let case = Case { design: Arc::new(design), run: RunSettings { steps, ..Default::default() } };
+    let steps = std::env::args()
+        .nth(1)
+        .and_then(|s| s.parse().ok())
+        .unwrap_or(30);
+    let case = Case {
+        design: Arc::new(design),
+        run: RunSettings {
+            steps,
+            ..Default::default()
+        },
+    };
     let start = std::time::Instant::now();
     let mut engine = new_engine();
     match engine.improve(&case, &Watch::idle(), &mut |r| {
