@@ -2,8 +2,11 @@
 
 pub mod check;
 pub mod contour;
+pub mod coordinate_list;
 pub mod curve;
 pub mod domain;
+pub mod duct;
+pub mod fit;
 pub mod h1;
 pub mod limits;
 pub mod measure;

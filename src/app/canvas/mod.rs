@@ -6,6 +6,9 @@ mod pick;
 mod shapes;
 mod tool;
 
+pub use fields::field_of;
+pub use shapes::flow_words;
+
 use super::theme::CanvasColours;
 use super::words::{CanvasInput, CanvasOutput, FieldChoice, Selection};
 use crate::base::Vec2;
