@@ -179,9 +179,8 @@ impl Studio {
             self.autosave();
         }
         for file in ctx.input(|i| i.raw.dropped_files.clone()) {
-            if let Some(path) = file.path().map(Path::to_path_buf) {
-                self.answered(Purpose::Open, &path);
-            }
+            let path = file.path().to_path_buf();
+            self.answered(Purpose::Open, &path);
         }
     }
 
