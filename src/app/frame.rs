@@ -21,7 +21,7 @@ pub fn draw(studio: &mut Studio, ui: &mut Ui) {
     if studio.settings.plots {
         Panel::bottom("plots")
             .resizable(true)
-            .default_size(190.0)
+            .default_size(210.0)
             .show(ui, |ui| plot_panel(studio, ui, units));
     }
     if studio.settings.sketch {
@@ -175,13 +175,13 @@ fn bar(studio: &mut Studio, ui: &mut Ui) {
             }
         });
         ui.separator();
-        for (command, label) in [(Command::Undo, "⟲"), (Command::Redo, "⟳")] {
+        for (command, label) in [(Command::Undo, "Undo"), (Command::Redo, "Redo")] {
             let name = if command == Command::Undo {
                 studio.history.undo_name()
             } else {
                 studio.history.redo_name()
             };
-            let label = name.map_or(label.to_owned(), |n| format!("{label} {n}"));
+            let label = name.map_or(label.to_owned(), |n| format!("{label}: {n}"));
             if command_button(ui, &now, command, &label) {
                 asked.push(command);
             }

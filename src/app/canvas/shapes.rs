@@ -7,14 +7,13 @@ use crate::base::units::{Kind, significant};
 use crate::base::{Vec2, vec2};
 use crate::geometry::{ClosedSpline, Curve, Segment};
 use crate::physics::FlowCondition;
-use crate::report::ticks;
 use egui::{Align2, Color32, FontId, Painter, Pos2, Rect, Shape, Stroke, pos2};
 
 /// Chords of a bent piece and of an insert's span on the screen.
 const PER_PIECE: usize = 48;
 const PER_SPAN: usize = 10;
 /// Radius of a handle, points.
-pub const HANDLE: f32 = 4.0;
+const HANDLE: f32 = 4.0;
 
 /// Drawing surface with its scale and colours.
 pub struct Pen<'a> {
@@ -79,11 +78,18 @@ impl Pen<'_> {
             return;
         }
         let font = FontId::proportional(10.5);
+        // A label about every 60 points, at every second, fifth or tenth line.
+        let apart = self.camera.scale * step;
+        let every = [2, 5, 10, 20]
+            .into_iter()
+            .find(|&k| apart * f64::from(k) > 60.0)
+            .map_or(20, i64::from);
         let text = |i: i64| {
             let value = i as f64 * step / unit.factor;
-            ticks::short(value, 6)
+            let decimals = (-(step / unit.factor).log10().floor()).max(0.0) as usize;
+            format!("{value:.decimals$}")
         };
-        for i in range(low.x, high.x).filter(|i| i.rem_euclid(2) == 0) {
+        for i in range(low.x, high.x).filter(|i| i.rem_euclid(every) == 0) {
             let x = self.at(vec2(i as f64 * step, 0.0)).x;
             let base = pos2(x, self.rect.bottom());
             self.painter.line_segment(
@@ -98,7 +104,7 @@ impl Pen<'_> {
                 self.colours.faint,
             );
         }
-        for i in range(low.y, high.y).filter(|i| i.rem_euclid(2) == 0) {
+        for i in range(low.y, high.y).filter(|i| i.rem_euclid(every) == 0) {
             let y = self.at(vec2(0.0, i as f64 * step)).y;
             let base = pos2(self.rect.left(), y);
             self.painter.line_segment(
@@ -289,6 +295,14 @@ impl Pen<'_> {
             if !input.editable {
                 continue;
             }
+            let n = insert.points_m.len();
+            let nearest = (0..n)
+                .map(|c| {
+                    self.at(insert.points_m[c])
+                        .distance(self.at(insert.points_m[(c + 1) % n]))
+                })
+                .fold(f32::INFINITY, f32::min);
+            let usual = (0.3 * nearest).clamp(1.6, HANDLE);
             for (c, &p) in insert.points_m.iter().enumerate() {
                 let mine = Selection::Control {
                     insert: i,
@@ -302,7 +316,7 @@ impl Pen<'_> {
                 } else {
                     self.colours.paper
                 };
-                let radius = if strong { HANDLE + 2.0 } else { HANDLE };
+                let radius = if strong { usual + 2.0 } else { usual };
                 self.painter.circle(
                     self.at(p),
                     radius,
@@ -340,7 +354,7 @@ impl Pen<'_> {
             return;
         }
         self.dimension(low, vec2(high.x, low.y), egui::vec2(0.0, 30.0));
-        self.dimension(vec2(high.x, low.y), high, egui::vec2(62.0, 0.0));
+        self.dimension(vec2(high.x, low.y), high, egui::vec2(46.0, 0.0));
         for (insert, m) in input.design.inserts.iter().zip(input.measures) {
             let [a, b] = m.box_m;
             self.dimension(vec2(a.x, a.y), vec2(b.x, a.y), egui::vec2(0.0, 16.0));

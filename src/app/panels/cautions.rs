@@ -20,10 +20,10 @@ pub fn show(
         .map(String::as_str)
         .chain(marks.iter().map(|m| m.text.as_str()))
     {
-        ui.label(RichText::new(format!("✖ {fault}")).color(bad));
+        ui.label(RichText::new(format!("× {fault}")).color(bad));
     }
     if let Some(failure) = failure {
-        ui.label(RichText::new(format!("✖ {failure}")).color(bad));
+        ui.label(RichText::new(format!("× {failure}")).color(bad));
     }
     if !faults.is_empty() || !marks.is_empty() {
         return;

@@ -44,7 +44,7 @@ pub fn show(
         ui.push_id(("limit", i), |ui| {
             ui.horizontal(|ui| {
                 if ui
-                    .small_button("✕")
+                    .small_button("×")
                     .on_hover_text("Remove this limit")
                     .clicked()
                 {
