@@ -15,6 +15,7 @@ pub mod measures;
 pub mod quantities;
 pub mod solve;
 pub mod tables;
+pub mod transfer;
 pub mod validity;
 
 pub use cells::Cells;

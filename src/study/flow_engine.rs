@@ -9,10 +9,11 @@ use super::{
 };
 use crate::base::{Vec2, Watch};
 use crate::geometry::{ClosedSpline, Domain, InsertMeasures, check, insert_measures};
-use crate::mesh::{CurvedMesh, Fineness, Locator, MeshError, MeshSettings, generate};
+use crate::mesh::{CurvedMesh, Fineness, MeshError, MeshSettings, generate};
 use crate::optimise::{self, Problem as _, Record, Refusal, Stop};
 use crate::physics::figures::PeakScale;
 use crate::physics::solve::{solve_flow, solve_heat};
+use crate::physics::transfer::carried;
 use crate::physics::validity::{InsertExtent, cautions};
 use crate::physics::{Discretisation, PhysicsError, Problem, Quantities, State, hints};
 use std::sync::Arc;
@@ -288,60 +289,6 @@ fn report(
         },
         cautions: list,
     }
-}
-
-/// Flow unknowns of a near state carried to a new mesh by interpolation; none when the problems differ too much.
-fn carried(near: &State, to: &Discretisation, mesh: &CurvedMesh) -> Option<Vec<f64>> {
-    if near.discretisation.problem.flow.len() != to.problem.flow.len()
-        || near.mesh.order != mesh.order
-    {
-        return None;
-    }
-    let locator = Locator::new(&near.mesh);
-    let old = &near.discretisation;
-    let mut x = to.flow.start.clone();
-    let pressure_basis = crate::mesh::reference::Reference::new(mesh.order - 1);
-    let pressure_places = crate::mesh::reference::nodes(mesh.order - 1);
-    let nodes = to.cells.node_count;
-    for (i, &place) in mesh.nodes.iter().enumerate() {
-        let Some((t, at)) = locator.find(place) else {
-            continue;
-        };
-        let mut u = [0.0; 2];
-        for (&n, v) in old.cells.element(t).iter().zip(locator.values(at)) {
-            u[0] += v * near.velocity[n as usize][0];
-            u[1] += v * near.velocity[n as usize][1];
-        }
-        let framed = to.flow.into_frame(u, i);
-        for c in 0..2 {
-            if !to.flow.layout.fixed[2 * i + c] {
-                x[2 * i + c] = framed[c];
-            }
-        }
-    }
-    for &t in &to.cells.fluid {
-        let [a, b, c] = mesh.mesh.triangles[t as usize].map(|v| mesh.mesh.points[v as usize]);
-        for (&n, [s, r]) in to
-            .cells
-            .pressure_element(t as usize)
-            .iter()
-            .zip(&pressure_places)
-        {
-            let place = a * (1.0 - s - r) + b * *s + c * *r;
-            if let Some((old_t, at)) = locator.find(place) {
-                let values = pressure_basis.values(at);
-                let p: f64 = old
-                    .cells
-                    .pressure_element(old_t)
-                    .iter()
-                    .zip(values)
-                    .map(|(&m, v)| v * old.flow.pressure(&near.flow, m as usize))
-                    .sum();
-                x[2 * nodes + n as usize] = p;
-            }
-        }
-    }
-    Some(x)
 }
 
 impl Engine for FlowEngine {

@@ -14,6 +14,7 @@ use crate::optimise::problem::Gradients;
 use crate::optimise::{Evaluation, Geometry, Problem, Refusal, Settled};
 use crate::physics::figures::{self, PeakScale, Ports};
 use crate::physics::measures::Measured;
+use crate::physics::transfer::carried;
 use crate::physics::{Discretisation, State, solve};
 use crate::sensitivity::{ControlChain, shape_gradient};
 use nalgebra::DMatrix;
@@ -345,9 +346,14 @@ impl Problem for ShapeProblem {
         }
         let mesh = self.frame.moved(&contours)?;
         let near = &self.state;
-        let same_topology = Arc::ptr_eq(&near.discretisation, &self.frame.discretisation);
-        let start = same_topology.then_some(&near.flow[..]);
-        self.state = solve(&self.frame.discretisation, mesh, start, watch).map_err(from_physics)?;
+        let to = &self.frame.discretisation;
+        // On the same topology the unknowns carry over as they are; on a new mesh they are interpolated.
+        let start = if Arc::ptr_eq(&near.discretisation, to) {
+            Some(near.flow.clone())
+        } else {
+            carried(near, to, &mesh)
+        };
+        self.state = solve(to, mesh, start.as_deref(), watch).map_err(from_physics)?;
         self.contours = contours;
         Ok(self.value())
     }
