@@ -131,7 +131,7 @@ fn main() {
             )
         })
         .collect();
-    save("air_rods_open", &Project { version: 1, name: "Rods in an open air stream".into(), notes: "Two staggered rods with a heat source, meshed inside, in a uniform stream between symmetry planes.".into(),
+    save("open_stream_rods", &Project { version: 1, name: "Rods in an open air stream".into(), notes: "Two staggered rods with a heat source, meshed inside, in a uniform stream between symmetry planes.".into(),
         design: Design { fluid: fluid("air", 300.0), duct: duct(Template::OpenStream, 0.03, FlowCondition::Velocity { velocity_m_s: [0.12, 0.0] }, 298.15), inserts: rods, aim: Aim::LeastPeakTemperature {},
             limits: vec![Limit::Area { insert: None, equal_m2: Some(1.25e-5), at_least_m2: None, at_most_m2: None }, Limit::CurvatureRadius { insert: None, at_least_m: 0.0004 }, Limit::Thickness { insert: None, at_least_m: 0.001 }, Limit::InsertGap { at_least_m: 0.002 }, Limit::WallGap { insert: None, at_least_m: 0.003 }, Limit::Centroid { insert: "rod 1".into(), at_m: vec2(0.027, 0.0099) }, Limit::Centroid { insert: "rod 2".into(), at_m: vec2(0.045, 0.0201) }] },
         run: RunSettings::default(), variants: vec![] });

@@ -1,9 +1,12 @@
-//! The program: a window or headless verbs.
+//! The program: a command line that opens the studio when it is given nothing else to do.
 
-fn main() {
-    let file = std::env::args().nth(1).map(std::path::PathBuf::from);
-    if let Err(e) = flumeloft::app::run(file) {
-        eprintln!("{e}");
-        std::process::exit(2);
-    }
+use flumeloft::cli::{Hooks, run};
+use std::process::ExitCode;
+
+fn main() -> ExitCode {
+    let hooks = Hooks {
+        open_studio: |file| flumeloft::app::run(file).map_err(Into::into),
+        make_engine: flumeloft::study::new_engine,
+    };
+    run(std::env::args_os(), hooks).into()
 }

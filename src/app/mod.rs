@@ -36,7 +36,7 @@ pub const SAMPLES: &[(&str, &str)] = &[
     ),
     (
         "Rod bank in an air stream",
-        include_str!("../../sample_projects/air_rods_open.json"),
+        include_str!("../../sample_projects/open_stream_rods.json"),
     ),
 ];
 
