@@ -396,7 +396,7 @@ fn step_record(problem: &ShapeProblem, record: &Record) -> StepRecord {
         step: record.iteration,
         evaluations: record.evaluations,
         accepted: record.accepted,
-        aim_value: described.as_ref().map_or(f64::NAN, |d| d.aim_value),
+        aim_value: problem.aim_of(record.objective),
         violation: record.violation,
         limits: described.as_ref().map_or(Vec::new(), |d| d.limits.clone()),
         inserts_m: contours.iter().map(|c| c.controls().to_vec()).collect(),

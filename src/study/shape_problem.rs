@@ -165,6 +165,11 @@ impl ShapeProblem {
             .value
     }
 
+    /// Value of the aim, SI, that belongs to a value of the objective.
+    pub fn aim_of(&self, objective: f64) -> f64 {
+        self.scale.offset + self.sign() * objective * self.scale.size
+    }
+
     /// The case with other contours.
     pub fn case_at(&self, contours: &[ClosedSpline]) -> Case {
         let mut design = (*self.case.design).clone();
