@@ -108,14 +108,23 @@ fn errors(state: &State) -> [f64; 3] {
     }
     let area: f64 = points.iter().map(|p| p.0).sum();
     let mean = points.iter().map(|p| p.0 * p.2).sum::<f64>() / area;
-    let norm = |f: &dyn Fn(&(f64, f64, f64, f64)) -> f64| {
+    type Point = (f64, f64, f64, f64);
+    let norm = |f: fn(&Point) -> f64| {
         points
             .iter()
             .map(|p| p.0 * f(p).powi(2))
             .sum::<f64>()
             .sqrt()
     };
-    [norm(&|p| p.1), norm(&|p| p.2 - mean), norm(&|p| p.3)]
+    [
+        norm(|p| p.1),
+        points
+            .iter()
+            .map(|p| p.0 * (p.2 - mean).powi(2))
+            .sum::<f64>()
+            .sqrt(),
+        norm(|p| p.3),
+    ]
 }
 
 /// Observed orders between two meshes must be at least those of the theory less 0.35 (coarse meshes scatter).

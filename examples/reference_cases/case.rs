@@ -29,8 +29,13 @@ pub struct ReferenceCase {
 }
 
 /// What this program does not know of a file.
-#[derive(Debug)]
 pub struct NotSupported(pub String);
+
+impl std::fmt::Debug for NotSupported {
+    fn fmt(&self, f: &mut std::fmt::Formatter<'_>) -> std::fmt::Result {
+        f.write_str(&self.0)
+    }
+}
 
 type Known<T> = Result<T, NotSupported>;
 

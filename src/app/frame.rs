@@ -533,8 +533,8 @@ fn plot_panel(studio: &mut Studio, ui: &mut Ui, units: Units) {
     );
     match asked {
         Some(plots::Asked::Look(step)) => studio.looked_at = step,
-        Some(plots::Asked::KeepStep(step)) => studio.from_step(step, true),
-        Some(plots::Asked::UseStep(step)) => studio.from_step(step, false),
+        Some(plots::Asked::KeepStep(step)) => studio.take_step(step, true),
+        Some(plots::Asked::UseStep(step)) => studio.take_step(step, false),
         None => {}
     }
 }

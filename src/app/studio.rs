@@ -453,7 +453,7 @@ impl Studio {
     }
 
     /// Take a step of the last run as design or as variant.
-    pub(super) fn from_step(&mut self, step: usize, as_variant: bool) {
+    pub(super) fn take_step(&mut self, step: usize, as_variant: bool) {
         let Some(record) = self.link.steps.get(step).cloned() else {
             return;
         };
@@ -588,7 +588,8 @@ impl Studio {
             }
             design
         });
-        let last = watched.or_else(|| (!self.link.steps.is_empty()).then(|| self.link.steps.len()));
+        let last =
+            watched.or_else(|| (!self.link.steps.is_empty()).then_some(self.link.steps.len()));
         let ghosts: Vec<Vec<Vec<Vec2>>> = last.map_or(Vec::new(), |last| {
             self.link.steps[..last.min(self.link.steps.len())]
                 .iter()

@@ -122,7 +122,7 @@ impl CurvedMesh {
                 });
             }
         }
-        boundary_nodes.sort_by(|a, b| (a.tag, a.node).cmp(&(b.tag, b.node)));
+        boundary_nodes.sort_by_key(|b| (b.tag, b.node));
         boundary_nodes.dedup_by(|a, b| a.tag == b.tag && a.node == b.node);
         Blending::new(order).add(&mesh, &numbers, &bends, &mut nodes);
         Self {
@@ -212,7 +212,7 @@ impl JacobianProof {
             .iter()
             .map(|&n| f(place(n)))
             .collect();
-        if nodal.iter().any(|&v| !(v > 0.0)) {
+        if nodal.iter().any(|&v| v.is_nan() || v <= 0.0) {
             return false;
         }
         if self

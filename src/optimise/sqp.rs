@@ -28,7 +28,8 @@ pub struct Settings {
     pub smallest_reach: f64,
     /// Predicted relative decrease below which nothing is left to gain.
     pub tolerance: f64,
-    /// Violation of state-dependent limits that counts as met.
+    /// Violation of state-dependent limits that counts as met: a problem aims a little inside its limits, so that
+    /// this much still leaves them met.
     pub feasible: f64,
 }
 
@@ -41,7 +42,7 @@ impl Default for Settings {
             largest_reach: 0.2,
             smallest_reach: 2e-4,
             tolerance: 3e-5,
-            feasible: 1e-6,
+            feasible: 1.5e-4,
         }
     }
 }
@@ -321,8 +322,7 @@ impl<P: Problem> Run<'_, P> {
             ));
         };
         let taken: Vec<f64> = x.iter().zip(&now.x).map(|(a, b)| a - b).collect();
-        let length = longest(&taken);
-        if length > FARTHEST * reach {
+        if longest(&taken) > FARTHEST * reach {
             return Ok(Trial::Rejected("limits led too far from the step".into()));
         }
         self.evaluations += 1;
@@ -331,6 +331,12 @@ impl<P: Problem> Run<'_, P> {
             Err(Refusal::TooFar(why)) => return Ok(Trial::Rejected(why)),
             Err(cancelled) => return Err(cancelled),
         };
+        let (x, taken, value) = if violation(&value) > self.settings.feasible {
+            self.corrected(now, model, metric, reach, (x, taken, value))?
+        } else {
+            (x, taken, value)
+        };
+        let length = longest(&taken);
         let predicted = self
             .predicted(now, model, &taken)
             .max(self.predicted(now, model, &step.step) * 1e-3);
@@ -345,6 +351,55 @@ impl<P: Problem> Run<'_, P> {
             })
         } else {
             Ok(Trial::Rejected("no gain".into()))
+        }
+    }
+
+    /// Second-order correction (Nocedal and Wright, section 18.3): the program again with the limits' values of the
+    /// trial in place of their linear prediction; kept when its merit is the better one.
+    fn corrected(
+        &mut self,
+        now: &Point,
+        model: &CurvatureModel,
+        metric: &DMatrix<f64>,
+        reach: f64,
+        trial: Tried,
+    ) -> Result<Tried, Refusal> {
+        let (x, taken, value) = trial;
+        let slopes = now.slope.limits.iter();
+        let limits = value
+            .limits
+            .iter()
+            .zip(slopes)
+            .map(|(c, g)| c - dot(g, &taken))
+            .collect();
+        let shifted = Point {
+            x: now.x.clone(),
+            value: Evaluation {
+                limits,
+                ..now.value.clone()
+            },
+            slope: now.slope.clone(),
+            geometry: now.geometry.clone(),
+        };
+        let Ok(step) = self.program(&shifted, model, reach) else {
+            return Ok((x, taken, value));
+        };
+        let target: Vec<f64> = now.x.iter().zip(&step.step).map(|(x, d)| x + d).collect();
+        let Ok(again) = restore(self.problem, metric, &target, reach) else {
+            return Ok((x, taken, value));
+        };
+        self.evaluations += 1;
+        match self.problem.evaluate(&again, self.watch) {
+            Ok(second) if self.merit(&second) < self.merit(&value) => {
+                let moved = again.iter().zip(&now.x).map(|(a, b)| a - b).collect();
+                Ok((again, moved, second))
+            }
+            Err(Refusal::Cancelled(c)) => Err(c.into()),
+            _ => {
+                // Derivatives are taken at the point evaluated last: back to the first trial.
+                let value = self.problem.evaluate(&x, self.watch)?;
+                Ok((x, taken, value))
+            }
         }
     }
 
@@ -435,6 +490,9 @@ impl<P: Problem> Run<'_, P> {
         }
     }
 }
+
+/// A point tried: variables, step from the present point, values.
+type Tried = (Vec<f64>, Vec<f64>, Evaluation);
 
 enum Trial {
     Accepted {

@@ -3,7 +3,7 @@
 
 use super::camera::Camera;
 use crate::app::theme::CanvasColours;
-use crate::app::words::FieldChoice;
+use crate::app::words::{CanvasInput, FieldChoice};
 use crate::base::units::Kind;
 use crate::base::{Vec2, vec2};
 use crate::report::{Field, colour, ticks};
@@ -208,13 +208,12 @@ pub fn cell_lines(painter: &Painter, camera: &Camera, rect: Rect, shot: &FieldSn
 pub fn legend(
     painter: &Painter,
     rect: Rect,
-    choice: FieldChoice,
     range: [f64; 2],
-    inch_based: bool,
     colours: &CanvasColours,
-    stale: bool,
-    dark: bool,
+    input: &CanvasInput,
 ) {
+    let (choice, inch_based) = (input.options.field, input.inch_based);
+    let (stale, dark) = (input.stale, input.dark);
     let Some(field) = field_of(choice) else {
         return;
     };

@@ -176,16 +176,7 @@ fn draw(
     pen.marks(input, cursor);
     if let (Some(_), true) = (input.snapshot, painted) {
         let range = state.fields.range;
-        fields::legend(
-            painter,
-            rect,
-            options.field,
-            range,
-            input.inch_based,
-            colours,
-            input.stale,
-            input.dark,
-        );
+        fields::legend(painter, rect, range, colours, input);
     }
     tool::hint(painter, state, camera, rect, colours, design);
 }
