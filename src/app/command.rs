@@ -69,6 +69,8 @@ pub enum Command {
     SmallerText,
     /// Find a command.
     FindCommand,
+    /// Write the window as a picture.
+    SnapWindow,
     /// List of keys.
     ShowKeys,
 }
@@ -131,7 +133,7 @@ const fn ctrl_shift(name: &'static str, help: &'static str, key: Key) -> Entry {
 
 impl Command {
     /// All commands, in the order of the finder.
-    pub const ALL: [Self; 33] = [
+    pub const ALL: [Self; 34] = [
         Self::Open,
         Self::Save,
         Self::SaveAs,
@@ -164,6 +166,7 @@ impl Command {
         Self::LargerText,
         Self::SmallerText,
         Self::FindCommand,
+        Self::SnapWindow,
         Self::ShowKeys,
     ];
 
@@ -257,6 +260,11 @@ impl Command {
                 "Find command…",
                 "Type a few letters of a command and press Enter",
                 Key::Space,
+            ),
+            Self::SnapWindow => plain(
+                "Picture of the window…",
+                "Write a picture of this window, for notes and manuals",
+                Key::F12,
             ),
             Self::ShowKeys => plain("Keys", "The list of all keys", Key::F1),
         }

@@ -117,3 +117,40 @@ pub fn import(studio: &mut Studio, path: &Path) -> Result<String, String> {
         "Read {name}: {points} control points, largest deviation from the list {deviation}."
     ))
 }
+
+/// Ask for the window's pixels once the question for the path is gone, and write them when they arrive.
+pub fn snap(studio: &mut Studio, ctx: &egui::Context) {
+    let Some((path, wait)) = studio.snap.take() else {
+        return;
+    };
+    let arrived = ctx.input(|i| {
+        i.events.iter().find_map(|e| match e {
+            egui::Event::Screenshot { image, .. } => Some(image.clone()),
+            _ => None,
+        })
+    });
+    if let Some(image) = arrived {
+        let [width, height] = image.size.map(|s| s as u32);
+        let bytes: Vec<u8> = image
+            .pixels
+            .iter()
+            .flat_map(|p| [p.r(), p.g(), p.b()])
+            .collect();
+        let saved =
+            image::RgbImage::from_raw(width, height, bytes).map(|picture| picture.save(&path));
+        let bad = !matches!(saved, Some(Ok(())));
+        let text = if bad {
+            "The picture could not be written to"
+        } else {
+            "Wrote the window to"
+        };
+        super::log(&format!("exported {}", path.display()));
+        studio.message = Some((format!("{text} {}.", path.display()), bad));
+        return;
+    }
+    if wait == 1 {
+        ctx.send_viewport_cmd(egui::ViewportCommand::Screenshot(egui::UserData::default()));
+    }
+    studio.snap = Some((path, wait.saturating_sub(1)));
+    ctx.request_repaint();
+}

@@ -115,6 +115,8 @@ pub enum Purpose {
     Picture,
     /// Write the history.
     History,
+    /// Write a picture of the window.
+    Window,
     /// Read a contour.
     Import,
 }
@@ -128,6 +130,7 @@ impl Purpose {
             Self::Contour => "Write the contour to",
             Self::Picture => "Write the picture to",
             Self::History => "Write the history to",
+            Self::Window => "Write the picture of the window to",
             Self::Import => "Read a contour from",
         }
     }

@@ -58,6 +58,8 @@ pub struct Studio {
     pub(super) export_mm: bool,
     pub(super) chord_text: String,
     pub(super) probe: Option<String>,
+    /// Path for a picture of the window, and frames to wait until the question is gone.
+    pub(super) snap: Option<(PathBuf, u32)>,
     frames: u32,
     autosaved: Option<Project>,
     applied_theme: Option<(bool, u32)>,
@@ -100,6 +102,7 @@ impl Studio {
             export_mm: true,
             chord_text: "0.005 mm".into(),
             probe: None,
+            snap: None,
             frames: 0,
             autosaved: None,
             applied_theme: None,
@@ -174,6 +177,7 @@ impl Studio {
         if let Some(question) = &mut self.question {
             question.poll();
         }
+        super::export::snap(self, ctx);
         self.frames += 1;
         if self.frames.is_multiple_of(AUTOSAVE_FRAMES) {
             self.autosave();
@@ -395,6 +399,7 @@ impl Studio {
                 self.settings.text_scale = (self.settings.text_scale - 0.1).max(0.8)
             }
             Command::FindCommand => self.finder = Some(String::new()),
+            Command::SnapWindow => self.ask(Purpose::Window, "window.png"),
             Command::ShowKeys => toggle(&mut self.keys_shown),
         }
         if matches!(
@@ -519,6 +524,10 @@ impl Studio {
             Purpose::Picture => super::export::picture(self, path),
             Purpose::History => super::export::history(self, path),
             Purpose::Import => super::export::import(self, path),
+            Purpose::Window => {
+                self.snap = Some((path.to_path_buf(), 2));
+                Ok("The picture of the window is being written.".into())
+            }
         }
     }
 
