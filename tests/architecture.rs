@@ -12,8 +12,23 @@ const LAYERS: [(&str, &[&str]); 12] = [
     ("optimise", &["base", "linalg"]),
     ("fem", &["base", "linalg", "mesh", "geometry"]),
     ("physics", &["base", "linalg", "mesh", "fem", "geometry"]),
-    ("sensitivity", &["base", "geometry", "linalg", "mesh", "fem", "physics"]),
-    ("study", &["base", "geometry", "linalg", "mesh", "fem", "physics", "sensitivity", "optimise"]),
+    (
+        "sensitivity",
+        &["base", "geometry", "linalg", "mesh", "fem", "physics"],
+    ),
+    (
+        "study",
+        &[
+            "base",
+            "geometry",
+            "linalg",
+            "mesh",
+            "fem",
+            "physics",
+            "sensitivity",
+            "optimise",
+        ],
+    ),
     ("report", &["base", "geometry", "physics", "study"]),
     ("cli", &["base", "geometry", "study", "report"]),
     ("app", &["base", "geometry", "physics", "study", "report"]),
@@ -24,13 +39,23 @@ const MOST_LINES: usize = 700;
 
 /// What is wrong with a file of a layer, if anything.
 fn fault(layer: &str, name: &str, text: &str) -> Option<String> {
-    let allowed = LAYERS.iter().find(|l| l.0 == layer).map_or(&[][..], |l| l.1);
-    let code: Vec<&str> = text.lines().map(|l| l.split("//").next().unwrap_or("")).collect();
-    let test_from = code.iter().position(|l| l.contains("#[cfg(test)]")).unwrap_or(code.len());
+    let allowed = LAYERS
+        .iter()
+        .find(|l| l.0 == layer)
+        .map_or(&[][..], |l| l.1);
+    let code: Vec<&str> = text
+        .lines()
+        .map(|l| l.split("//").next().unwrap_or(""))
+        .collect();
+    let test_from = code
+        .iter()
+        .position(|l| l.contains("#[cfg(test)]"))
+        .unwrap_or(code.len());
     for (i, line) in code.iter().enumerate() {
         let at = |what: &str| Some(format!("{name}:{}: {what}", i + 1));
         for (other, _) in LAYERS {
-            let named = line.contains(&format!("crate::{other}::")) || line.contains(&format!("crate::{other};"));
+            let named = line.contains(&format!("crate::{other}::"))
+                || line.contains(&format!("crate::{other};"));
             if named && other != layer && !allowed.contains(&other) {
                 return at(&format!("{layer} must not use {other}"));
             }
@@ -39,11 +64,16 @@ fn fault(layer: &str, name: &str, text: &str) -> Option<String> {
             return at("the window library belongs to app");
         }
         let threads = line.contains("std::thread") && i < test_from;
-        let at_home = name.contains("worker") || name.contains("mailbox") || name.ends_with("parallel.rs") || name.ends_with("persist.rs");
+        let at_home = name.contains("worker")
+            || name.contains("mailbox")
+            || name.ends_with("parallel.rs")
+            || name.ends_with("persist.rs");
         if threads && !at_home && !name.contains("stand_in") {
             return at("threads belong to the worker, the element loops and the file dialogue");
         }
-        let prints = ["println!", "print!(", "eprintln!", "dbg!("].iter().any(|p| line.contains(p));
+        let prints = ["println!", "print!(", "eprintln!", "dbg!("]
+            .iter()
+            .any(|p| line.contains(p));
         if prints && layer != "cli" && i < test_from {
             return at("printing belongs to cli");
         }
@@ -52,7 +82,8 @@ fn fault(layer: &str, name: &str, text: &str) -> Option<String> {
             return at("no clock below study");
         }
     }
-    (code.len() > MOST_LINES).then(|| format!("{name} has {} lines: is it one room or two?", code.len()))
+    (code.len() > MOST_LINES)
+        .then(|| format!("{name} has {} lines: is it one room or two?", code.len()))
 }
 
 fn files(folder: &Path) -> Vec<PathBuf> {
@@ -75,8 +106,16 @@ fn rooms_are_kept() {
     let mut faults = Vec::new();
     for (layer, _) in LAYERS {
         for path in files(&source.join(layer)) {
-            let name = path.strip_prefix(&source).unwrap().to_string_lossy().into_owned();
-            faults.extend(fault(layer, &name, &std::fs::read_to_string(&path).unwrap()));
+            let name = path
+                .strip_prefix(&source)
+                .unwrap()
+                .to_string_lossy()
+                .into_owned();
+            faults.extend(fault(
+                layer,
+                &name,
+                &std::fs::read_to_string(&path).unwrap(),
+            ));
         }
     }
     assert!(faults.is_empty(), "{}", faults.join("\n"));
@@ -92,8 +131,18 @@ fn each_planted_violation_is_seen() {
         ("study", "println!(\"x\");"),
         ("fem", "let t = std::time::Instant::now();"),
     ] {
-        assert!(fault(layer, "planted.rs", text).is_some(), "{layer}: {text}");
+        assert!(
+            fault(layer, "planted.rs", text).is_some(),
+            "{layer}: {text}"
+        );
     }
     assert!(fault("base", "long.rs", &"\n".repeat(MOST_LINES + 2)).is_some());
-    assert!(fault("mesh", "fine.rs", "use crate::geometry::Curve; // see crate::physics::State").is_none());
+    assert!(
+        fault(
+            "mesh",
+            "fine.rs",
+            "use crate::geometry::Curve; // see crate::physics::State"
+        )
+        .is_none()
+    );
 }

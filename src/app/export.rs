@@ -118,18 +118,17 @@ pub fn import(studio: &mut Studio, path: &Path) -> Result<String, String> {
     ))
 }
 
-/// Ask for the window's pixels once the question for the path is gone, and write them when they arrive.
+/// Ask for the window's pixels once the question for the path is gone; they are written when they arrive.
 pub fn snap(studio: &mut Studio, ctx: &egui::Context) {
     let Some((path, wait)) = studio.snap.take() else {
         return;
     };
-    let arrived = ctx.input(|i| {
-        i.events.iter().find_map(|e| match e {
-            egui::Event::Screenshot { image, .. } => Some(image.clone()),
-            _ => None,
-        })
-    });
-    if let Some(image) = arrived {
+    if wait > 0 {
+        studio.snap = Some((path, wait - 1));
+        ctx.request_repaint();
+        return;
+    }
+    ctx.request_screenshot(move |image| {
         let [width, height] = image.size.map(|s| s as u32);
         let bytes: Vec<u8> = image
             .pixels
@@ -138,19 +137,11 @@ pub fn snap(studio: &mut Studio, ctx: &egui::Context) {
             .collect();
         let saved =
             image::RgbImage::from_raw(width, height, bytes).map(|picture| picture.save(&path));
-        let bad = !matches!(saved, Some(Ok(())));
-        let text = if bad {
-            "The picture could not be written to"
+        let done = if matches!(saved, Some(Ok(()))) {
+            "exported"
         } else {
-            "Wrote the window to"
+            "failed to write"
         };
-        super::log(&format!("exported {}", path.display()));
-        studio.message = Some((format!("{text} {}.", path.display()), bad));
-        return;
-    }
-    if wait == 1 {
-        ctx.send_viewport_cmd(egui::ViewportCommand::Screenshot(egui::UserData::default()));
-    }
-    studio.snap = Some((path, wait.saturating_sub(1)));
-    ctx.request_repaint();
+        super::log(&format!("{done} {}", path.display()));
+    });
 }

@@ -1,5 +1,6 @@
 //! The window: draws, edits shapes, asks the worker. The only layer that knows egui.
 
+mod bar;
 pub mod canvas;
 mod canvas_words;
 pub mod command;
@@ -13,6 +14,7 @@ pub mod persist;
 pub mod studio;
 mod templates;
 pub mod theme;
+mod windows;
 pub mod words;
 
 pub use studio::Studio;
