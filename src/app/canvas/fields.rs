@@ -228,6 +228,11 @@ pub fn legend(
         kind.shown(inch_based).symbol,
         if stale { " (being computed)" } else { "" }
     );
+    let backdrop = Rect::from_min_max(
+        bar.left_top() - egui::vec2(12.0, 24.0),
+        bar.right_bottom() + egui::vec2(12.0, 22.0),
+    );
+    painter.rect_filled(backdrop, 4.0, colours.paper.gamma_multiply(0.88));
     painter.text(
         bar.left_top() - egui::vec2(0.0, 5.0),
         egui::Align2::LEFT_BOTTOM,

@@ -112,7 +112,7 @@ fn navigate(
         if (pinch - 1.0).abs() > 1e-4 {
             camera.zoom(rect, at, f64::from(pinch), state.fitted);
         } else if scroll.y != 0.0 && !ctrl {
-            camera.zoom(rect, at, f64::from(scroll.y / 180.0).exp(), state.fitted);
+            camera.zoom(rect, at, f64::from(scroll.y / 420.0).exp(), state.fitted);
         }
         if scroll.x != 0.0 {
             camera.pan(egui::vec2(scroll.x, 0.0));

@@ -357,8 +357,12 @@ impl Pen<'_> {
         self.dimension(vec2(high.x, low.y), high, egui::vec2(46.0, 0.0));
         for (insert, m) in input.design.inserts.iter().zip(input.measures) {
             let [a, b] = m.box_m;
-            self.dimension(vec2(a.x, a.y), vec2(b.x, a.y), egui::vec2(0.0, 16.0));
-            self.dimension(vec2(b.x, a.y), b, egui::vec2(18.0, 0.0));
+            let across = self.at(a).distance(self.at(b));
+            if across < SMALLEST_DIMENSIONED {
+                continue;
+            }
+            self.dimension(vec2(a.x, a.y), vec2(b.x, a.y), egui::vec2(0.0, 22.0));
+            self.dimension(vec2(b.x, a.y), b, egui::vec2(34.0, 0.0));
             let (gap, place) = m.min_gap_m;
             let contour = insert.contour();
             let (t, _) = contour.nearest(place);
@@ -437,6 +441,9 @@ impl Pen<'_> {
         }
     }
 }
+
+/// Inserts smaller than this on the screen, points, carry no dimensions: they would hide the shape.
+const SMALLEST_DIMENSIONED: f32 = 90.0;
 
 /// Distance of grid lines, m: 1, 2 or 5 times a power of ten of the unit, at least 14 points apart.
 pub fn grid_step_m(camera: &Camera, inch_based: bool) -> f64 {
