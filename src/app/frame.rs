@@ -21,7 +21,8 @@ pub fn draw(studio: &mut Studio, ui: &mut Ui) {
     if studio.settings.plots {
         Panel::bottom("plots")
             .resizable(true)
-            .default_size(210.0)
+            .default_size(230.0)
+            .min_size(190.0)
             .show(ui, |ui| plot_panel(studio, ui, units));
     }
     if studio.settings.sketch {
@@ -65,6 +66,9 @@ fn keys(studio: &Studio, ui: &Ui) -> Vec<Command> {
         })
         .collect()
 }
+
+/// Width that the probe's readout takes at most, points.
+const PROBE_WIDTH: f32 = 760.0;
 
 fn status(studio: &mut Studio, ui: &mut Ui) {
     ui.horizontal(|ui| {
@@ -113,13 +117,21 @@ fn status(studio: &mut Studio, ui: &mut Ui) {
         ui.separator();
         if let Some((text, bad)) = &studio.message {
             let text = RichText::new(text);
-            ui.add(
-                egui::Label::new(if *bad {
-                    text.color(ui.visuals().error_fg_color)
-                } else {
-                    text
-                })
-                .truncate(),
+            let text = if *bad {
+                text.color(ui.visuals().error_fg_color)
+            } else {
+                text
+            };
+            // The probe keeps its place at the right.
+            let kept = if studio.probe.is_some() {
+                PROBE_WIDTH
+            } else {
+                0.0
+            };
+            let width = (ui.available_width() - kept).max(80.0);
+            ui.add_sized(
+                [width, 18.0],
+                egui::Label::new(text).truncate().halign(Align::LEFT),
             );
         }
         ui.with_layout(Layout::right_to_left(Align::Center), |ui| {

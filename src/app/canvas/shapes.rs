@@ -91,6 +91,9 @@ impl Pen<'_> {
         };
         for i in range(low.x, high.x).filter(|i| i.rem_euclid(every) == 0) {
             let x = self.at(vec2(i as f64 * step, 0.0)).x;
+            if x < self.rect.left() + 44.0 {
+                continue; // the unit stands there
+            }
             let base = pos2(x, self.rect.bottom());
             self.painter.line_segment(
                 [base, base - egui::vec2(0.0, 5.0)],
@@ -106,6 +109,9 @@ impl Pen<'_> {
         }
         for i in range(low.y, high.y).filter(|i| i.rem_euclid(every) == 0) {
             let y = self.at(vec2(0.0, i as f64 * step)).y;
+            if y > self.rect.bottom() - 26.0 {
+                continue;
+            }
             let base = pos2(self.rect.left(), y);
             self.painter.line_segment(
                 [base, base + egui::vec2(5.0, 0.0)],
@@ -302,7 +308,8 @@ impl Pen<'_> {
                         .distance(self.at(insert.points_m[(c + 1) % n]))
                 })
                 .fold(f32::INFINITY, f32::min);
-            let usual = (0.3 * nearest).clamp(1.6, HANDLE);
+            let usual =
+                (0.3 * nearest).clamp(1.6, HANDLE) * if selected || near { 1.0 } else { 0.65 };
             for (c, &p) in insert.points_m.iter().enumerate() {
                 let mine = Selection::Control {
                     insert: i,

@@ -276,6 +276,10 @@ fn line(
     ui.end_row();
 }
 
+/// Differences outside these, per cent, say nothing: noise, or a comparison with nearly zero.
+const LEAST_PERCENT: f64 = 5e-3;
+const MOST_PERCENT: f64 = 1000.0;
+
 /// Difference in words and its relative size (kelvin for temperatures).
 fn difference(kind: Kind, value: f64, before: f64, units: Units) -> (String, f64) {
     if kind == Kind::Temperature {
@@ -294,6 +298,12 @@ fn difference(kind: Kind, value: f64, before: f64, units: Units) -> (String, f64
     }
     let relative = value / before - 1.0;
     let percent = 100.0 * relative;
+    if percent.abs() < LEAST_PERCENT {
+        return ("±0 %".into(), 0.0);
+    }
+    if percent.abs() > MOST_PERCENT {
+        return ("from about 0".into(), relative);
+    }
     let digits = significant(percent.abs(), 3);
     (
         format!("{}{digits} %", if percent < 0.0 { "−" } else { "+" }),
