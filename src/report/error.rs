@@ -23,6 +23,14 @@ pub enum ReportError {
         /// Path of its key.
         key: String,
     },
+    /// The chord tolerance asks for more points than a list may have.
+    #[error(
+        "a chord tolerance of {chord_m} m needs more points than a list may have: choose a larger one"
+    )]
+    TooFine {
+        /// What was asked for, m.
+        chord_m: f64,
+    },
     /// The report could not be turned into text.
     #[error("the report cannot be turned into JSON: {0}")]
     Json(#[from] serde_json::Error),
