@@ -5,7 +5,7 @@ use std::process::ExitCode;
 
 fn main() -> ExitCode {
     let hooks = Hooks {
-        open_studio: |_file| Err("this build has no window".into()),
+        open_studio: |file| flumeloft::app::run(file).map_err(Into::into),
         make_engine: flumeloft::study::new_engine,
     };
     run(std::env::args_os(), hooks).into()

@@ -1,9 +1,9 @@
 //! The words that canvas, panels and plots share: what is selected, what an edit is, what is shown.
 
 use crate::base::Vec2;
-use crate::geometry::PieceShape;
+use crate::geometry::{InsertMeasures, PieceShape};
 use crate::physics::{FlowCondition, Fluid, ThermalCondition};
-use crate::study::{Aim, Design, Insert, Limit, RunSettings, Solved};
+use crate::study::{Aim, Design, FieldSnapshot, Insert, Limit, RunSettings};
 use std::sync::Arc;
 
 /// What the properties panel shows and the canvas highlights.
@@ -214,16 +214,18 @@ pub struct Mark {
 
 /// What the canvas is given each frame.
 pub struct CanvasInput<'a> {
-    /// Present design.
+    /// Design to draw (the present one, or that of a step being watched).
     pub design: &'a Design,
+    /// Measures of its inserts, when they could be taken.
+    pub measures: &'a [InsertMeasures],
     /// Selected thing.
     pub selection: &'a Selection,
-    /// Newest solved state (its case tells whether it is stale).
-    pub solved: Option<&'a Arc<Solved>>,
-    /// Whether the solved state belongs to an older design: numbers and fields are greyed.
+    /// Pictures of the newest state.
+    pub snapshot: Option<&'a Arc<FieldSnapshot>>,
+    /// Whether they belong to an older design: fields are greyed.
     pub stale: bool,
-    /// Whether a run is in progress (shapes cannot be edited while improving).
-    pub improving: bool,
+    /// Whether shapes can be changed (not while improving or looking at an earlier step).
+    pub editable: bool,
     /// Contours of earlier steps, oldest first, m: drawn as ghosts.
     pub ghosts_m: &'a [Vec<Vec<Vec2>>],
     /// Geometry verdicts and cautions with places.
@@ -232,6 +234,8 @@ pub struct CanvasInput<'a> {
     pub options: &'a ViewOptions,
     /// Units of text.
     pub inch_based: bool,
+    /// Dark colours.
+    pub dark: bool,
 }
 
 /// What the canvas returns each frame.

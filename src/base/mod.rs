@@ -1,6 +1,7 @@
 //! Vectors, dual numbers, units of text, and the watch that carries cancellation and progress.
 
 pub mod dual;
+pub mod units;
 pub mod vec2;
 pub mod watch;
 

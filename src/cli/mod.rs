@@ -20,11 +20,14 @@ use exit::CommandError;
 use std::ffi::OsString;
 use std::path::PathBuf;
 
+/// Opens the window, with a project if one is named.
+pub type OpenStudio = fn(Option<PathBuf>) -> Result<(), Box<dyn std::error::Error>>;
+
 /// What the command line needs from above and below: handed in, so that it depends on neither.
 #[derive(Clone, Copy)]
 pub struct Hooks {
     /// Opens the window, with a project if one is named.
-    pub open_studio: fn(Option<PathBuf>) -> Result<(), Box<dyn std::error::Error>>,
+    pub open_studio: OpenStudio,
     /// Makes the engine that computes.
     pub make_engine: fn() -> Box<dyn Engine>,
 }

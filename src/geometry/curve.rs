@@ -94,7 +94,7 @@ fn arc_through(from: Vec2, through: Vec2, to: Vec2) -> Segment {
     if twice_area.abs() <= FLATTEST_ARC * a.norm() * b.norm() {
         return Segment::Line { from, to };
     }
-    let offset = (b * a.norm_squared() - a * b.norm_squared()).left() / (2.0 * twice_area);
+    let offset = (b * a.norm_squared() - a * b.norm_squared()).right() / (2.0 * twice_area);
     let centre = from + offset;
     let start = from - centre;
     let end = to - centre;
@@ -172,6 +172,39 @@ impl Curve for Segment {
                 points,
                 seconds,
             } => super::open_spline::evaluate(knots, points, seconds, t)[2],
+        }
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::base::vec2;
+
+    /// Both ways round, short and long: the arc passes its middle point and keeps its radius.
+    #[test]
+    fn arcs_pass_through_their_three_points() {
+        for (from, through, to) in [
+            (vec2(1.0, 0.0), vec2(0.0, 1.0), vec2(-1.0, 0.0)),
+            (vec2(-5.0, -3.0), vec2(0.0, -1.6), vec2(5.0, -3.0)),
+            (vec2(1.0, 0.0), vec2(-1.0, 0.1), vec2(0.0, -1.0)),
+            (vec2(2.0, 1.0), vec2(3.0, 0.0), vec2(2.2, -0.9)),
+        ] {
+            let arc = Segment::new(&PieceShape::Arc { through_m: through }, from, to);
+            let Segment::Arc {
+                centre, radius_m, ..
+            } = arc
+            else {
+                panic!("not an arc")
+            };
+            let nearest = (0..=1000)
+                .map(|i| arc.point(i as f64 / 1000.0).distance(through))
+                .fold(f64::INFINITY, f64::min);
+            assert!(nearest < 1e-2, "{nearest}");
+            assert!((through.distance(centre) / radius_m - 1.0).abs() < 1e-12);
+            assert!(
+                arc.point(0.999999).distance(to) < 1e-4 && arc.point(1e-6).distance(from) < 1e-4
+            );
         }
     }
 }

@@ -1,8 +1,20 @@
 //! Triangulation to size, curved elements, quality, motion and location.
 
 pub mod curved;
+pub mod error;
+pub mod generate;
+pub mod locate;
+pub mod motion;
 pub mod reference;
+pub mod sizing;
+pub mod structured;
 pub mod tri_mesh;
+mod triangulate;
 
 pub use curved::{BoundaryNode, CurvedMesh};
+pub use error::MeshError;
+pub use generate::generate;
+pub use locate::Locator;
+pub use motion::Motion;
+pub use sizing::{Fineness, MeshSettings};
 pub use tri_mesh::{BoundaryEdge, TriMesh};

@@ -1,5 +1,6 @@
 //! The engine's face: project file, cases, runs and the worker. The window and the command line use only this.
 
+mod aims;
 mod case;
 pub mod design;
 pub mod engine;
@@ -7,10 +8,14 @@ pub mod fault;
 pub mod file;
 #[cfg(test)]
 mod file_tests;
+pub mod flow_engine;
 mod json_layout;
 mod mailbox;
+pub mod picture;
 pub mod protocol;
 pub mod report;
+mod shape_limits;
+mod shape_problem;
 pub mod snapshot;
 pub mod stand_in;
 #[cfg(test)]
@@ -39,5 +44,5 @@ pub use worker::Worker;
 
 /// The engine that the window and the command line compute with.
 pub fn new_engine() -> Box<dyn Engine> {
-    Box::new(stand_in::StandIn::default())
+    Box::new(flow_engine::FlowEngine::new())
 }

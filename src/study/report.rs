@@ -1,6 +1,5 @@
 //! What a solve and an improvement report: the keys of the headless JSON, SI units, per metre of depth.
 
-use crate::base::Vec2;
 use serde::Serialize;
 
 /// Seconds spent by stage (wall clock; the only figures that differ between equal runs).
@@ -33,29 +32,7 @@ pub struct Balance {
     pub area_relative: f64,
 }
 
-/// How much a caution matters.
-#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Serialize)]
-#[serde(rename_all = "snake_case")]
-pub enum CautionLevel {
-    /// Good to know.
-    Note,
-    /// Figures may be off.
-    Caution,
-    /// Figures should not be used as they are, or someone may get hurt.
-    Warning,
-}
-
-/// A live, specific caution: its text names the number that triggers it.
-#[derive(Clone, Debug, PartialEq, Serialize)]
-pub struct Caution {
-    /// How much it matters.
-    pub level: CautionLevel,
-    /// One or two sentences with the number.
-    pub text: String,
-    /// Place on the drawing, m, if it has one.
-    #[serde(skip_serializing_if = "Option::is_none")]
-    pub place_m: Option<Vec2>,
-}
+pub use crate::physics::validity::{Caution, CautionLevel};
 
 /// Figures of one insert.
 #[derive(Clone, Debug, PartialEq, Serialize)]

@@ -1,0 +1,662 @@
+//! The studio: its state, what a frame does, and the dispatcher, which alone changes the design.
+
+use super::canvas::{self, CanvasState};
+use super::command::{Availability, Command};
+use super::edits;
+use super::history::{History, Kept};
+use super::link::{Link, News};
+use super::persist::{self, PathQuestion, Purpose, Settings};
+use super::words::{Edit, FieldChoice, Gesture, Mark, Selection, ViewOptions};
+use super::{log, panels, theme};
+use crate::base::Vec2;
+use crate::geometry::{InsertMeasures, check, insert_measures};
+use crate::study::{Case, Design, Improved, Project, SolveReport, Variant};
+use panels::plots::Tab;
+use std::path::{Path, PathBuf};
+use std::sync::Arc;
+
+/// Frames between two looks at whether the session must be written.
+const AUTOSAVE_FRAMES: u32 = 240;
+
+/// Verdicts and measures of a design, taken once for each.
+#[derive(Default)]
+pub(super) struct Geometry {
+    design: Option<Design>,
+    /// Sentences without a place.
+    pub faults: Vec<String>,
+    /// Sentences with their place.
+    pub marks: Vec<Mark>,
+    /// Measures of the inserts; empty while there are faults.
+    pub measures: Vec<InsertMeasures>,
+}
+
+/// Everything the window holds.
+pub struct Studio {
+    pub(super) project: Project,
+    saved: Project,
+    pub(super) path: Option<PathBuf>,
+    pub(super) selection: Selection,
+    pub(super) history: History,
+    pub(super) link: Link,
+    pub(super) view: ViewOptions,
+    pub(super) canvas: CanvasState,
+    pub(super) settings: Settings,
+    pub(super) geometry: Geometry,
+    /// Step of the last run that is looked at.
+    pub(super) looked_at: Option<usize>,
+    /// Reports of kept variants, by name.
+    pub(super) kept: Vec<(String, Arc<SolveReport>)>,
+    /// Variant that figures are compared with.
+    pub(super) compared: Option<String>,
+    pub(super) tab: Tab,
+    pub(super) question: Option<PathQuestion>,
+    pub(super) finder: Option<String>,
+    pub(super) keys_shown: bool,
+    /// Last thing worth telling.
+    pub(super) message: Option<(String, bool)>,
+    pub(super) recovery: Option<PathBuf>,
+    pub(super) export_mm: bool,
+    pub(super) chord_text: String,
+    pub(super) probe: Option<String>,
+    /// Path for a picture of the window, and frames to wait until the question is gone.
+    pub(super) snap: Option<(PathBuf, u32)>,
+    frames: u32,
+    autosaved: Option<Project>,
+    applied_theme: Option<(bool, u32)>,
+}
+
+impl Studio {
+    /// A studio with a project; `wake` asks for a frame from other threads.
+    pub fn new(
+        project: Project,
+        path: Option<PathBuf>,
+        settings: Settings,
+        wake: impl Fn() + Send + Sync + 'static,
+    ) -> Self {
+        let recovery = persist::autosave_path(path.as_deref()).filter(|p| p.exists());
+        let selection = if project.design.inserts.is_empty() {
+            Selection::Nothing
+        } else {
+            Selection::Insert(0)
+        };
+        Self {
+            saved: project.clone(),
+            project,
+            path,
+            selection,
+            history: History::default(),
+            link: Link::new(wake),
+            view: ViewOptions::default(),
+            canvas: CanvasState::default(),
+            settings,
+            geometry: Geometry::default(),
+            looked_at: None,
+            kept: Vec::new(),
+            compared: None,
+            tab: Tab::default(),
+            question: None,
+            finder: None,
+            keys_shown: false,
+            message: None,
+            recovery,
+            export_mm: true,
+            chord_text: "0.005 mm".into(),
+            probe: None,
+            snap: None,
+            frames: 0,
+            autosaved: None,
+            applied_theme: None,
+        }
+    }
+
+    /// The present project.
+    pub fn project(&self) -> &Project {
+        &self.project
+    }
+
+    /// Report of the newest solved state, and whether it belongs to an older drawing.
+    pub fn figures(&self) -> Option<(&SolveReport, bool)> {
+        self.link
+            .solved
+            .as_ref()
+            .map(|s| (&s.report, self.link.is_stale(&self.case())))
+    }
+
+    /// Whether the project differs from its file.
+    pub fn is_dirty(&self) -> bool {
+        self.project != self.saved
+    }
+
+    /// Name of what undo takes back.
+    pub fn undo_name(&self) -> Option<&str> {
+        self.history.undo_name()
+    }
+
+    /// Whether an improvement runs.
+    pub fn is_improving(&self) -> bool {
+        self.link.is_improving()
+    }
+
+    /// Screen place of a point of the drawing at the last frame.
+    pub fn screen_from_world(&self, place_m: Vec2) -> Option<egui::Pos2> {
+        self.canvas.screen_from_world(place_m)
+    }
+
+    pub(super) fn case(&self) -> Case {
+        self.project.case()
+    }
+
+    pub(super) fn availability(&self) -> Availability {
+        Availability {
+            improving: self.link.is_improving(),
+            can_undo: self.history.undo_name().is_some(),
+            can_redo: self.history.redo_name().is_some(),
+            has_free_insert: self.project.design.inserts.iter().any(|i| !i.frozen),
+            has_insert: !self.project.design.inserts.is_empty(),
+            has_faults: !self.geometry.faults.is_empty() || !self.geometry.marks.is_empty(),
+            has_history: !self.link.steps.is_empty(),
+        }
+    }
+
+    /// Before drawing: events of the worker, verdicts, the next solve, autosave.
+    pub fn logic(&mut self, ctx: &egui::Context) {
+        let look = (self.settings.dark, self.settings.text_scale.to_bits());
+        if self.applied_theme != Some(look) {
+            theme::apply(ctx, self.settings.dark, self.settings.text_scale);
+            self.applied_theme = Some(look);
+        }
+        for news in self.link.drain() {
+            self.take(news);
+        }
+        self.update_geometry();
+        let sound = self.geometry.faults.is_empty() && self.geometry.marks.is_empty();
+        if sound {
+            let case = self.case();
+            self.link.want(&case);
+        }
+        if let Some(question) = &mut self.question {
+            question.poll();
+        }
+        super::export::snap(self, ctx);
+        self.frames += 1;
+        if self.frames.is_multiple_of(AUTOSAVE_FRAMES) {
+            self.autosave();
+        }
+        for file in ctx.input(|i| i.raw.dropped_files.clone()) {
+            let path = file.path().to_path_buf();
+            self.answered(Purpose::Open, &path);
+        }
+    }
+
+    /// Write the session if it changed since the last time.
+    pub fn autosave(&mut self) {
+        if self.is_dirty() && self.autosaved.as_ref() != Some(&self.project) {
+            persist::autosave(&self.project, self.path.as_deref());
+            self.autosaved = Some(self.project.clone());
+        }
+    }
+
+    fn take(&mut self, news: News) {
+        match news {
+            News::Nothing => {}
+            News::Solved(report) => log(&format!(
+                "solved heat={:.6e} drop={:.6e} flow={:.6e}",
+                report.heat_w_m, report.total_pressure_drop_pa, report.flow_rate_m2_s
+            )),
+            News::Step(k) => {
+                let step = &self.link.steps[k];
+                log(&format!(
+                    "step {} aim={:.6e} taken={}",
+                    step.step, step.aim_value, step.accepted
+                ));
+            }
+            News::Finished(improved) => self.finished(&improved),
+            News::Failed(sentence) => {
+                log(&format!("failed {sentence}"));
+                self.message = Some((sentence, true));
+            }
+        }
+    }
+
+    fn finished(&mut self, improved: &Improved) {
+        let before = Kept {
+            design: self.project.design.clone(),
+            run: self.project.run.clone(),
+        };
+        self.history.begin(&before);
+        self.project.design = (*improved.best.case.design).clone();
+        let after = Kept {
+            design: self.project.design.clone(),
+            run: self.project.run.clone(),
+        };
+        self.history.finish("improve".into(), &after);
+        self.looked_at = None;
+        let (start, best) = (improved.start.aim_value, improved.best.aim_value);
+        let change = if start != 0.0 {
+            100.0 * (best / start - 1.0)
+        } else {
+            0.0
+        };
+        let text = format!(
+            "{}: {change:+.1} % after {} steps and {} states. {}",
+            self.project.design.aim.words(),
+            improved.steps,
+            improved.evaluations,
+            improved.stop_sentence
+        );
+        log(&format!("finished aim={best:.6e} change={change:.3}"));
+        self.keep(
+            "before improving",
+            improved.start.case.design.inserts.clone(),
+            Some(improved.start.report.clone()),
+        );
+        self.message = Some((text, false));
+    }
+
+    fn update_geometry(&mut self) {
+        if self.geometry.design.as_ref() == Some(&self.project.design) {
+            return;
+        }
+        let design = self.project.design.clone();
+        let (mut faults, mut marks) = (Vec::new(), Vec::new());
+        let mut add = |text: String, place: Option<Vec2>| match place {
+            Some(place_m) => marks.push(Mark { place_m, text }),
+            None => faults.push(text),
+        };
+        for fault in design.faults().into_iter().chain(self.project.run.faults()) {
+            add(fault.to_string(), fault.place_m);
+        }
+        let usable = design.inserts.iter().all(|i| i.points_m.len() >= 4) && design.duct.len() >= 2;
+        let mut measures = Vec::new();
+        if usable {
+            let domain = design.sketch();
+            for fault in check(&domain) {
+                add(fault.to_string(), fault.place());
+            }
+            if faults.is_empty() && marks.is_empty() {
+                measures = (0..domain.inserts.len())
+                    .map(|i| insert_measures(&domain, i))
+                    .collect();
+            }
+        }
+        self.geometry = Geometry {
+            design: Some(design),
+            faults,
+            marks,
+            measures,
+        };
+    }
+
+    /// Make an edit; the only code that changes design and settings.
+    pub fn edit(&mut self, gesture: &Gesture) {
+        if self.link.is_improving() {
+            return;
+        }
+        self.looked_at = None;
+        let now = || Kept {
+            design: self.project.design.clone(),
+            run: self.project.run.clone(),
+        };
+        self.history.begin(&now());
+        let name = edits::apply(
+            &mut self.project.design,
+            &mut self.project.run,
+            &gesture.edit,
+        );
+        if gesture.finished {
+            let after = Kept {
+                design: self.project.design.clone(),
+                run: self.project.run.clone(),
+            };
+            self.history.finish(name.unwrap_or_default(), &after);
+        }
+        self.message = None;
+    }
+
+    pub(super) fn edit_whole(&mut self, edit: Edit) {
+        self.edit(&Gesture {
+            edit,
+            finished: true,
+        });
+    }
+
+    fn restore(&mut self, kept: Option<Kept>) {
+        if let Some(kept) = kept {
+            self.project.design = kept.design;
+            self.project.run = kept.run;
+            self.selection = Selection::Nothing;
+            self.looked_at = None;
+        }
+    }
+
+    /// Carry out a command.
+    pub fn dispatch(&mut self, ctx: &egui::Context, command: Command) {
+        if command.blocked(&self.availability()).is_some() {
+            return;
+        }
+        let now = Kept {
+            design: self.project.design.clone(),
+            run: self.project.run.clone(),
+        };
+        let toggle = |b: &mut bool| *b = !*b;
+        match command {
+            Command::Open => self.ask(Purpose::Open, "project.json"),
+            Command::Save => match self.path.clone() {
+                Some(path) => self.answered(Purpose::SaveAs, &path),
+                None => self.ask(Purpose::SaveAs, "project.json"),
+            },
+            Command::SaveAs => self.ask(Purpose::SaveAs, "project.json"),
+            Command::Undo => {
+                let kept = self.history.undo(now);
+                self.restore(kept);
+            }
+            Command::Redo => {
+                let kept = self.history.redo(now);
+                self.restore(kept);
+            }
+            Command::Improve => {
+                self.message = self.project.bounding_limit_missing().map(|m| (m, true));
+                self.tab = Tab::History;
+                let case = self.case();
+                self.link.improve(&case);
+                log("improving");
+            }
+            Command::Stop => self.link.stop(),
+            Command::Pause => self.link.set_paused(!self.link.is_paused()),
+            Command::KeepVariant => {
+                let report = self
+                    .link
+                    .solved
+                    .as_ref()
+                    .filter(|s| s.case == self.case())
+                    .map(|s| s.report.clone());
+                self.keep("variant", self.project.design.inserts.clone(), report);
+            }
+            Command::ExportContour => self.ask(Purpose::Contour, "contour.txt"),
+            Command::ExportPicture => self.ask(Purpose::Picture, "picture.png"),
+            Command::ExportHistory => self.ask(Purpose::History, "history.csv"),
+            Command::ImportContour => self.ask(Purpose::Import, "contour.txt"),
+            Command::FitView => self.canvas.fit_asked = true,
+            Command::ShowTemperature => self.view.field = FieldChoice::Temperature,
+            Command::ShowSpeed => self.view.field = FieldChoice::Speed,
+            Command::ShowPressure => self.view.field = FieldChoice::Pressure,
+            Command::ShowTotalPressure => self.view.field = FieldChoice::TotalPressure,
+            Command::ShowNothing => self.view.field = FieldChoice::Nothing,
+            Command::ToggleIsoLines => toggle(&mut self.view.iso_lines),
+            Command::ToggleStreamlines => toggle(&mut self.view.streamlines),
+            Command::ToggleMesh => toggle(&mut self.view.mesh),
+            Command::ToggleDimensions => toggle(&mut self.view.dimensions),
+            Command::ToggleSnap => toggle(&mut self.view.snap),
+            Command::ToggleSketch => toggle(&mut self.settings.sketch),
+            Command::ToggleFigures => toggle(&mut self.settings.figures),
+            Command::TogglePlots => toggle(&mut self.settings.plots),
+            Command::ToggleDark => toggle(&mut self.settings.dark),
+            Command::ToggleUnits => toggle(&mut self.settings.inch_based),
+            Command::LargerText => {
+                self.settings.text_scale = (self.settings.text_scale + 0.1).min(1.8)
+            }
+            Command::SmallerText => {
+                self.settings.text_scale = (self.settings.text_scale - 0.1).max(0.8)
+            }
+            Command::FindCommand => self.finder = Some(String::new()),
+            Command::SnapWindow => self.ask(Purpose::Window, "window.png"),
+            Command::ShowKeys => toggle(&mut self.keys_shown),
+        }
+        if matches!(
+            command,
+            Command::ShowTemperature
+                | Command::ShowSpeed
+                | Command::ShowPressure
+                | Command::ShowTotalPressure
+        ) {
+            self.view.fixed_range = None;
+        }
+        self.settings.save();
+        ctx.request_repaint();
+    }
+
+    fn ask(&mut self, purpose: Purpose, name: &str) {
+        let folder = self
+            .path
+            .as_deref()
+            .and_then(Path::parent)
+            .map_or_else(PathBuf::new, Path::to_path_buf);
+        let proposal = match (purpose, &self.path) {
+            (Purpose::SaveAs, Some(path)) => path.clone(),
+            _ => folder.join(name),
+        };
+        self.question = Some(PathQuestion::new(purpose, &proposal));
+    }
+
+    /// Keep inserts as a variant under a free name.
+    pub(super) fn keep(
+        &mut self,
+        stem: &str,
+        inserts: Vec<crate::study::Insert>,
+        report: Option<SolveReport>,
+    ) {
+        let taken = |n: &str| self.project.variants.iter().any(|v| v.name == n);
+        let name = (1..)
+            .map(|i| {
+                if i == 1 && stem != "variant" {
+                    stem.to_owned()
+                } else {
+                    format!("{stem} {i}")
+                }
+            })
+            .find(|n| !taken(n))
+            .unwrap_or_default();
+        self.project.variants.push(Variant {
+            name: name.clone(),
+            inserts,
+        });
+        if let Some(report) = report {
+            self.kept.push((name.clone(), Arc::new(report)));
+            self.compared = Some(name.clone());
+        }
+        self.message = Some((format!("Kept as \"{name}\"."), false));
+    }
+
+    /// Take a step of the last run as design or as variant.
+    pub(super) fn take_step(&mut self, step: usize, as_variant: bool) {
+        let Some(record) = self.link.steps.get(step).cloned() else {
+            return;
+        };
+        let mut design = self.project.design.clone();
+        for (insert, points) in design.inserts.iter_mut().zip(&record.inserts_m) {
+            insert.points_m.clone_from(points);
+        }
+        if as_variant {
+            self.keep(
+                &format!("step {}", record.step),
+                design.inserts,
+                record.report.map(|r| (*r).clone()),
+            );
+        } else {
+            self.edit_whole(Edit::Replace {
+                to: Box::new(design),
+                name: format!("take step {}", record.step),
+            });
+        }
+    }
+
+    /// A path was given.
+    pub fn answered(&mut self, purpose: Purpose, path: &Path) {
+        let result = self.file(purpose, path);
+        match result {
+            Ok(text) => {
+                log(&format!(
+                    "{} {}",
+                    if matches!(purpose, Purpose::Open | Purpose::Import) {
+                        "read"
+                    } else {
+                        "exported"
+                    },
+                    path.display()
+                ));
+                self.message = Some((text, false));
+                self.question = None;
+            }
+            Err(sentence) => {
+                log(&format!("failed {sentence}"));
+                self.message = Some((sentence, true));
+            }
+        }
+    }
+
+    fn file(&mut self, purpose: Purpose, path: &Path) -> Result<String, String> {
+        match purpose {
+            Purpose::Open => {
+                let project = Project::load(path).map_err(|e| e.to_string())?;
+                self.open(project, Some(path.to_path_buf()));
+                Ok(format!("Opened {}.", path.display()))
+            }
+            Purpose::SaveAs => {
+                self.project.save(path).map_err(|e| e.to_string())?;
+                persist::forget_autosave(self.path.as_deref());
+                self.path = Some(path.to_path_buf());
+                self.saved = self.project.clone();
+                self.settings.remember(path);
+                self.settings.save();
+                Ok(format!("Saved {}.", path.display()))
+            }
+            Purpose::Contour => super::export::contour(self, path),
+            Purpose::Picture => super::export::picture(self, path),
+            Purpose::History => super::export::history(self, path),
+            Purpose::Import => super::export::import(self, path),
+            Purpose::Window => {
+                self.snap = Some((path.to_path_buf(), 2));
+                Ok("The picture of the window is being written.".into())
+            }
+        }
+    }
+
+    /// Replace everything by another project.
+    pub fn open(&mut self, project: Project, path: Option<PathBuf>) {
+        if let Some(path) = &path {
+            self.settings.remember(path);
+            self.settings.save();
+        }
+        self.autosave();
+        self.selection = if project.design.inserts.is_empty() {
+            Selection::Nothing
+        } else {
+            Selection::Insert(0)
+        };
+        self.saved = project.clone();
+        self.project = project;
+        self.path = path;
+        self.history = History::default();
+        self.link.steps.clear();
+        self.link.improved = None;
+        self.kept.clear();
+        self.compared = None;
+        self.looked_at = None;
+        self.canvas.fit_asked = true;
+        self.recovery = persist::autosave_path(self.path.as_deref()).filter(|p| p.exists());
+    }
+
+    /// Take the session that was written before the last end.
+    pub(super) fn recover(&mut self) {
+        if let Some(file) = self.recovery.take() {
+            match Project::load(&file) {
+                Ok(project) => {
+                    let path = self.path.clone();
+                    let saved = self.saved.clone();
+                    self.open(project, path);
+                    self.saved = saved;
+                    self.recovery = None;
+                    self.message = Some(("The unsaved session was taken up again.".into(), false));
+                }
+                Err(error) => self.message = Some((error.to_string(), true)),
+            }
+        }
+    }
+
+    pub(super) fn refit(&mut self) {
+        self.canvas.fit_asked = true;
+    }
+
+    /// Draw a frame.
+    pub fn ui(&mut self, ui: &mut egui::Ui) {
+        super::frame::draw(self, ui);
+    }
+
+    pub(super) fn canvas_frame(&mut self, ui: &mut egui::Ui) {
+        let improving = self.link.is_improving();
+        let watched = if improving {
+            self.link.steps.iter().rposition(|s| s.accepted)
+        } else {
+            self.looked_at
+        };
+        let record = watched.and_then(|k| self.link.steps.get(k));
+        let shown = record.map(|r| {
+            let mut design = self.project.design.clone();
+            for (insert, points) in design.inserts.iter_mut().zip(&r.inserts_m) {
+                insert.points_m.clone_from(points);
+            }
+            design
+        });
+        let last =
+            watched.or_else(|| (!self.link.steps.is_empty()).then_some(self.link.steps.len()));
+        let ghosts: Vec<Vec<Vec<Vec2>>> = last.map_or(Vec::new(), |last| {
+            self.link.steps[..last.min(self.link.steps.len())]
+                .iter()
+                .filter(|s| s.accepted)
+                .map(|s| s.inserts_m.clone())
+                .collect()
+        });
+        let show_ghosts = improving
+            || self.looked_at.is_some()
+            || self
+                .link
+                .improved
+                .as_ref()
+                .is_some_and(|i| i.best.case == self.case());
+        let case = self.case();
+        let record_shot = record.and_then(|r| r.snapshot.clone());
+        let snapshot =
+            record_shot.or_else(|| self.link.solved.as_ref().map(|s| s.snapshot.clone()));
+        let mut marks = self.geometry.marks.clone();
+        if marks.is_empty()
+            && let Some((report, false)) = self.figures()
+        {
+            let placed = report
+                .cautions
+                .iter()
+                .filter(|c| c.level >= crate::study::CautionLevel::Warning);
+            marks.extend(placed.filter_map(|c| {
+                Some(Mark {
+                    place_m: c.place_m?,
+                    text: c.text.clone(),
+                })
+            }));
+            marks.truncate(1);
+        }
+        let input = super::words::CanvasInput {
+            design: shown.as_ref().unwrap_or(&self.project.design),
+            measures: if shown.is_some() {
+                &[]
+            } else {
+                &self.geometry.measures
+            },
+            selection: &self.selection,
+            snapshot: snapshot.as_ref(),
+            stale: record.is_none() && self.link.is_stale(&case),
+            editable: !improving && self.looked_at.is_none(),
+            ghosts_m: if show_ghosts { &ghosts } else { &[] },
+            marks: &marks,
+            options: &self.view,
+            inch_based: self.settings.inch_based,
+            dark: self.settings.dark,
+        };
+        let output = canvas::show(ui, &mut self.canvas, &input);
+        for gesture in &output.gestures {
+            self.edit(gesture);
+        }
+        if let Some(selection) = output.selection {
+            self.selection = selection;
+        }
+        self.probe = output.probe;
+    }
+}
