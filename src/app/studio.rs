@@ -9,7 +9,7 @@ use super::persist::{self, PathQuestion, Purpose, Settings};
 use super::words::{Edit, FieldChoice, Gesture, Mark, Selection, ViewOptions};
 use super::{log, panels, theme};
 use crate::base::Vec2;
-use crate::geometry::{InsertMeasures, check, insert_measures};
+use crate::geometry::{InsertMeasures, insert_measures};
 use crate::study::{Case, Design, Improved, Project, SolveReport, Variant};
 use panels::plots::Tab;
 use std::path::{Path, PathBuf};
@@ -270,9 +270,6 @@ impl Studio {
         let mut measures = Vec::new();
         if usable {
             let domain = design.sketch();
-            for fault in check(&domain) {
-                add(fault.to_string(), fault.place());
-            }
             if faults.is_empty() && marks.is_empty() {
                 measures = (0..domain.inserts.len())
                     .map(|i| insert_measures(&domain, i))

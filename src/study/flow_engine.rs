@@ -8,7 +8,7 @@ use super::{
     SolveReport, Solved, StepRecord, StopReason,
 };
 use crate::base::{Vec2, Watch};
-use crate::geometry::{ClosedSpline, Domain, InsertMeasures, check, insert_measures};
+use crate::geometry::{ClosedSpline, Domain, InsertMeasures, insert_measures};
 use crate::mesh::{CurvedMesh, Fineness, MeshError, MeshSettings, generate};
 use crate::optimise::{self, Problem as _, Record, Refusal, Stop};
 use crate::physics::figures::PeakScale;
@@ -79,16 +79,7 @@ fn domain_of(case: &Case) -> Result<Domain, Failure> {
             places,
         ));
     }
-    let domain = case.design.sketch();
-    let faults = check(&domain);
-    if !faults.is_empty() {
-        let places = faults.iter().filter_map(|f| f.place()).collect();
-        return Err(bad(
-            faults.iter().map(ToString::to_string).collect(),
-            places,
-        ));
-    }
-    Ok(domain)
+    Ok(case.design.sketch())
 }
 
 fn from_mesh(error: MeshError) -> Failure {

@@ -85,7 +85,24 @@ impl Design {
         }
         validate_ports::check(self, &mut faults);
         validate_limits::check(self, &mut faults);
+        self.drawing_faults(&mut faults);
         faults
+    }
+
+    /// Crossings, overlaps and the like, once every curve can be made.
+    fn drawing_faults(&self, faults: &mut Vec<Fault>) {
+        let enough = |i: &Insert| i.points_m.len() >= FEWEST_CONTROLS;
+        let told = |f: &Fault| f.key.contains("points_m") || f.key.contains("to_m");
+        if self.duct.len() < 2 || !self.inserts.iter().all(enough) || faults.iter().any(told) {
+            return;
+        }
+        for fault in crate::geometry::check(&self.sketch()) {
+            let told = Fault::new("design", fault.to_string());
+            faults.push(match fault.place() {
+                Some(place_m) => told.at(place_m),
+                None => told,
+            });
+        }
     }
 
     fn fluid_faults(&self, faults: &mut Vec<Fault>) {
