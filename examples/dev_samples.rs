@@ -78,7 +78,7 @@ fn main() {
         },
     );
     let area = ClosedSpline::new(tube.points_m.clone()).area();
-    save("air_tube", &Project { version: 1, name: "Air-cooled tube".into(), notes: "A warm tube across a small fan-driven duct. The fan holds 0.05 Pa of total pressure at the inlet; the tube may change its cross-section but keeps its area, 1.5 mm to the walls, and radii and thickness that can be extruded.".into(),
+    save("air_tube", &Project { version: 1, name: "Air-cooled tube".into(), notes: "A warm tube across a small fan-driven duct. The fan holds 50 mPa of total pressure at the inlet; the tube may change its cross-section but keeps its area, 1.5 mm to the walls, and radii and thickness that can be extruded.".into(),
         design: Design { fluid: fluid("air", 300.0), duct: duct(Template::Straight, 0.01, FlowCondition::TotalPressure { pressure_pa: 0.05 }, 298.15), inserts: vec![tube], aim: Aim::MostHeat {},
             limits: vec![Limit::Area { insert: None, equal_m2: Some(area), at_least_m2: None, at_most_m2: None }, Limit::WallGap { insert: None, at_least_m: 0.0015 }, Limit::CurvatureRadius { insert: None, at_least_m: 0.0004 }, Limit::Thickness { insert: None, at_least_m: 0.001 }, Limit::BoundingBox { insert: None, lower_left_m: vec2(0.014, 0.001), upper_right_m: vec2(0.027, 0.009) }] },
         run: RunSettings::default(), variants: vec![] });

@@ -52,7 +52,7 @@ pub enum FileError {
     },
     /// Not JSON.
     #[error(
-        "line {line}, column {column}: not valid JSON ({reason}); numbers such as NaN cannot be written"
+        "line {line}, column {column}: not valid JSON ({reason}): correct the text there; NaN and infinity are no numbers of JSON"
     )]
     Syntax {
         /// Line, from 1.
