@@ -70,3 +70,44 @@ fn poiseuille_flow_in_a_turned_channel_is_exact() {
         assert!(worst < 1e-11, "order {order}: {worst}");
     }
 }
+
+/// Half a channel below a symmetry plane carries half the flow of the whole at the same pressure gradient: the given
+/// flow rate enters as half a parabola and stays so (Batchelor, 4.2).
+#[test]
+fn half_a_channel_under_a_symmetry_plane_is_exact() {
+    let (length, half, flow) = (2.0, 0.5, 0.3);
+    let mesh = mapped_square(3, 2, 3, |p| vec2(p.x * length, p.y * half));
+    let adiabatic = ThermalCondition::Adiabatic {};
+    let problem = Problem {
+        fluid: fluid(),
+        flow: vec![
+            FlowCondition::Wall {},
+            FlowCondition::StaticPressure { pressure_pa: 0.0 },
+            FlowCondition::Symmetry {},
+            FlowCondition::FlowRate {
+                flow_rate_m2_s: flow,
+            },
+        ],
+        piece_thermal: vec![
+            adiabatic.clone(),
+            adiabatic.clone(),
+            adiabatic,
+            ThermalCondition::FixedTemperature {
+                temperature_k: 300.0,
+            },
+        ],
+        insert_thermal: vec![],
+    };
+    let discretisation = Arc::new(Discretisation::new(&mesh, problem).unwrap());
+    let state = solve(&discretisation, mesh, None, &Watch::idle()).unwrap();
+    let q = flumeloft::physics::Quantities::new(&state);
+    // dp/L = 12 mu (2 flow)/(2 half)^3 for the whole channel.
+    let exact = 12.0 * 0.05 * 2.0 * flow / (2.0f64 * half).powi(3) * length;
+    assert!(
+        (q.static_pressure_drop_pa / exact - 1.0).abs() < 1e-9,
+        "{} {exact}",
+        q.static_pressure_drop_pa
+    );
+    // The flawed twin: a full parabola would need more.
+    assert!((q.static_pressure_drop_pa / (4.0 * exact) - 1.0).abs() > 0.5);
+}

@@ -247,13 +247,11 @@ fn freedoms(mesh: &CurvedMesh, cells: &Cells, conditions: &[FlowCondition]) -> V
     }
     for (i, condition) in conditions.iter().enumerate() {
         if let FlowCondition::FlowRate { flow_rate_m2_s } = condition {
-            parabola(
-                mesh,
-                cells,
-                BoundaryTag::Piece(i as u32),
-                *flow_rate_m2_s,
-                &mut freedoms,
-            );
+            let symmetry =
+                |k: usize| matches!(conditions[k % conditions.len()], FlowCondition::Symmetry {});
+            let ends = [symmetry(i + conditions.len() - 1), symmetry(i + 1)];
+            let tag = BoundaryTag::Piece(i as u32);
+            parabola(mesh, cells, tag, *flow_rate_m2_s, ends, &mut freedoms);
         }
     }
     freedoms
@@ -274,6 +272,17 @@ fn stricter(a: Freedom, b: Freedom) -> Freedom {
     }
 }
 
+/// Shape of the given inflow at a fraction `s` of the port: a parabola between walls, its half where one end meets
+/// a symmetry plane (`ends`: at the start, at the end), uniform between two of them. Scaled by the caller.
+fn profile_shape(s: f64, ends: [bool; 2]) -> f64 {
+    match ends {
+        [false, false] => s * (1.0 - s),
+        [true, false] => 1.0 - s * s,
+        [false, true] => s * (2.0 - s),
+        [true, true] => 1.0,
+    }
+}
+
 /// Parabolic inflow along a piece: u = -6 U s (1 - s) n with s the fraction of the arc through the nodes, scaled so that the discrete
 /// flow rate is the given one to the last digit.
 fn parabola(
@@ -281,6 +290,7 @@ fn parabola(
     cells: &Cells,
     tag: BoundaryTag,
     flow_rate: f64,
+    ends: [bool; 2],
     freedoms: &mut [Freedom],
 ) {
     let mut along: Vec<(f64, usize)> = mesh
@@ -299,7 +309,7 @@ fn parabola(
     let profile: Vec<(usize, f64)> = along
         .iter()
         .zip(&arc)
-        .map(|(&(_, node), &a)| (node, 6.0 * a / length * (1.0 - a / length)))
+        .map(|(&(_, node), &a)| (node, profile_shape(a / length, ends)))
         .collect();
     let mut inward = vec![None; cells.node_count];
     let mut carried = 0.0;
