@@ -14,9 +14,10 @@ use crate::study::{Case, Design, Improved, Project, SolveReport, Variant};
 use panels::plots::Tab;
 use std::path::{Path, PathBuf};
 use std::sync::Arc;
+use std::time::{Duration, Instant};
 
-/// Frames between two looks at whether the session must be written.
-const AUTOSAVE_FRAMES: u32 = 240;
+/// Time after a change until the session is written beside the project.
+const AUTOSAVE_AFTER: Duration = Duration::from_secs(3);
 
 /// Verdicts and measures of a design, taken once for each.
 #[derive(Default)]
@@ -60,7 +61,7 @@ pub struct Studio {
     pub(super) probe: Option<String>,
     /// Path for a picture of the window, and frames to wait until the question is gone.
     pub(super) snap: Option<(PathBuf, u32)>,
-    frames: u32,
+    unsaved_since: Option<Instant>,
     autosaved: Option<Project>,
     applied_theme: Option<(bool, u32)>,
 }
@@ -103,7 +104,7 @@ impl Studio {
             chord_text: "0.005 mm".into(),
             probe: None,
             snap: None,
-            frames: 0,
+            unsaved_since: None,
             autosaved: None,
             applied_theme: None,
         }
@@ -178,9 +179,14 @@ impl Studio {
             question.poll();
         }
         super::export::snap(self, ctx);
-        self.frames += 1;
-        if self.frames.is_multiple_of(AUTOSAVE_FRAMES) {
-            self.autosave();
+        if self.is_dirty() && self.autosaved.as_ref() != Some(&self.project) {
+            let since = *self.unsaved_since.get_or_insert_with(Instant::now);
+            if since.elapsed() >= AUTOSAVE_AFTER {
+                self.autosave();
+                self.unsaved_since = None;
+            } else {
+                ctx.request_repaint_after(AUTOSAVE_AFTER);
+            }
         }
         for file in ctx.input(|i| i.raw.dropped_files.clone()) {
             let path = file.path().to_path_buf();

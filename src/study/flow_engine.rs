@@ -333,14 +333,25 @@ impl Engine for FlowEngine {
             Err(refusal) => return Err(from_refusal(refusal)),
         };
         let best_case = problem.case_at(&problem.contours_at(&outcome.x));
-        // A stopped run still owes its best shape: computed without the watch that was stopped.
-        let calm = if watch.is_stopped() {
-            Watch::idle()
-        } else {
-            watch.clone()
+        // A stopped run answers at once with the state it had; otherwise the best shape is confirmed on a mesh of its
+        // own, from rest, as the start was.
+        let known = watch
+            .is_stopped()
+            .then(|| recorded(&history, &best_case))
+            .flatten();
+        let best = match known {
+            Some(best) => best,
+            None => {
+                let calm = if watch.is_stopped() {
+                    Watch::idle()
+                } else {
+                    watch.clone()
+                };
+                let (best, state) = Self::solved(&best_case, None, &calm)?;
+                self.last = Some(state);
+                best
+            }
         };
-        let (best, state) = Self::solved(&best_case, None, &calm)?;
-        self.last = Some(state);
         let (stop, stop_sentence) = stop_words(&outcome.stop, &problem, outcome.violation);
         Ok(Improved {
             start,
@@ -353,6 +364,25 @@ impl Engine for FlowEngine {
             gradient_check,
         })
     }
+}
+
+/// The recorded state of a case, if one of the iterations stood there.
+fn recorded(history: &[StepRecord], case: &Case) -> Option<Solved> {
+    let here = |r: &&StepRecord| {
+        r.accepted
+            && r.inserts_m
+                .iter()
+                .zip(&case.design.inserts)
+                .all(|(p, i)| *p == i.points_m)
+    };
+    let record = history.iter().rev().find(here)?;
+    Some(Solved {
+        case: case.clone(),
+        report: (**record.report.as_ref()?).clone(),
+        limits: record.limits.clone(),
+        aim_value: record.aim_value,
+        snapshot: record.snapshot.clone()?,
+    })
 }
 
 /// Gradient of the aim along its own direction against central differences.
