@@ -22,7 +22,9 @@ fn median(runs: usize, mut work: impl FnMut()) -> f64 {
 
 fn main() {
     let text = include_str!("../sample_projects/air_tube.json");
-    let Ok(project) = Project::from_json(text) else { return };
+    let Ok(project) = Project::from_json(text) else {
+        return;
+    };
     let case = project.case();
     let domain = case.design.sketch();
     let state = median(9, || {
