@@ -53,18 +53,19 @@ fn main() {
     let measures = median(99, || {
         std::hint::black_box(insert_measures(&domain, 0));
     });
-    let mut steps = 0;
     let mut short = case.clone();
     short.run.steps = 6;
     let since = Instant::now();
-    let mut first = None;
+    let mut times = Vec::new();
     let _ = FlowEngine::new().improve(&short, &Watch::idle(), &mut |record| {
         if record.accepted {
-            first.get_or_insert_with(|| since.elapsed().as_secs_f64());
-            steps += 1;
+            times.push(since.elapsed().as_secs_f64());
         }
     });
-    let step = (since.elapsed().as_secs_f64() - first.unwrap_or(0.0)) / f64::from(steps.max(2) - 1);
+    let step = match (times.first(), times.last()) {
+        (Some(first), Some(last)) if times.len() > 1 => (last - first) / (times.len() - 1) as f64,
+        _ => f64::NAN,
+    };
     println!("work                                       seconds   over a state from rest");
     for (name, time) in [
         ("state from rest, design mesh", state),
