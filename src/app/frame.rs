@@ -34,7 +34,8 @@ pub fn draw(studio: &mut Studio, ui: &mut Ui) {
     if studio.settings.figures {
         Panel::right("figures")
             .resizable(true)
-            .default_size(352.0)
+            .default_size(384.0)
+            .min_size(384.0)
             .show(ui, |ui| figures_panel(studio, ui, units));
     }
     egui::CentralPanel::default()

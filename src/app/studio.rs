@@ -62,6 +62,7 @@ pub struct Studio {
     /// Path for a picture of the window, and frames to wait until the question is gone.
     pub(super) snap: Option<(PathBuf, u32)>,
     unsaved_since: Option<Instant>,
+    handle_told: Option<egui::Pos2>,
     autosaved: Option<Project>,
     applied_theme: Option<(bool, u32)>,
 }
@@ -105,6 +106,7 @@ impl Studio {
             probe: None,
             snap: None,
             unsaved_since: None,
+            handle_told: None,
             autosaved: None,
             applied_theme: None,
         }
@@ -585,6 +587,24 @@ impl Studio {
         super::frame::draw(self, ui);
     }
 
+    /// Log the place of the first handle whenever it moved on the screen (for the test of the real window).
+    fn tell_handle(&mut self, scale: f32) {
+        let first = self
+            .project
+            .design
+            .inserts
+            .first()
+            .and_then(|i| i.points_m.first());
+        let Some(at) = first.and_then(|p| self.canvas.screen_from_world(*p)) else {
+            return;
+        };
+        let told = (at * scale).round();
+        if self.handle_told != Some(told) {
+            log(&format!("handle {:.0} {:.0}", told.x, told.y));
+            self.handle_told = Some(told);
+        }
+    }
+
     pub(super) fn canvas_frame(&mut self, ui: &mut egui::Ui) {
         let improving = self.link.is_improving();
         let watched = if improving {
@@ -654,6 +674,7 @@ impl Studio {
             dark: self.settings.dark,
         };
         let output = canvas::show(ui, &mut self.canvas, &input);
+        self.tell_handle(ui.ctx().pixels_per_point());
         for gesture in &output.gestures {
             self.edit(gesture);
         }

@@ -155,7 +155,10 @@ const COINCIDENT: f64 = 1e-6;
 const SHARPEST: f64 = 8.0;
 /// Farthest from the origin in sizes: at 1e6 ten digits of the shape are left.
 const FARTHEST: f64 = 1e6;
-/// Chords an insert's span is cut in.
+/// Chords an insert is cut in at least: their sagitta is then below the gap that counts as touching, however few
+/// control points there are.
+const PER_INSERT: usize = 256;
+/// Chords a span is cut in at least.
 const PER_SPAN: usize = 10;
 /// Chords a bent outline piece is cut in.
 const PER_PIECE: usize = 64;
@@ -246,7 +249,14 @@ pub fn check(domain: &Domain) -> Vec<GeometryFault> {
     let inserts: Vec<Polyline> = domain
         .inserts
         .iter()
-        .map(|i| Polyline::new(&i.name, i.contour.samples(PER_SPAN), true))
+        .map(|i| {
+            Polyline::new(
+                &i.name,
+                i.contour
+                    .samples(PER_SPAN.max(PER_INSERT / i.contour.len().max(1))),
+                true,
+            )
+        })
         .collect();
     outline_faults(domain, &outline, size, &mut faults);
     for (i, insert) in inserts.iter().enumerate() {
@@ -560,7 +570,7 @@ mod tests {
 
     proptest! {
         #[test]
-        fn no_input_panics(values in proptest::collection::vec(any::<f64>(), 0..40)) {
+        fn no_input_panics(values in proptest::collection::vec(proptest::num::f64::ANY, 0..40)) {
             let points = values.chunks_exact(2).map(|c| vec2(c[0], c[1])).collect();
             check(&duct(vec![("a", points)]));
         }

@@ -26,6 +26,14 @@ pub enum ListError {
         /// What it holds.
         text: String,
     },
+    /// A unit that is not known.
+    #[error("line {line}: the unit \"{unit}\" is not known; write mm, m, cm, um or in")]
+    Unit {
+        /// Line number from 1.
+        line: usize,
+        /// What it says.
+        unit: String,
+    },
     /// Too few points.
     #[error(
         "the list has {count} different points, too few for a closed contour; it needs at least 4"
@@ -57,7 +65,7 @@ impl CoordinateList {
         for (i, line) in text.lines().enumerate() {
             let line = line.trim().trim_start_matches('\u{feff}');
             if let Some(comment) = line.strip_prefix('#') {
-                header(comment, &mut factor, &mut name);
+                header(comment, i + 1, &mut factor, &mut name)?;
                 continue;
             }
             if line.is_empty() {
@@ -100,24 +108,36 @@ impl CoordinateList {
     }
 }
 
-fn header(comment: &str, factor: &mut f64, name: &mut Option<String>) {
+fn header(
+    comment: &str,
+    line: usize,
+    factor: &mut f64,
+    name: &mut Option<String>,
+) -> Result<(), ListError> {
     let Some((key, value)) = comment.split_once(':') else {
-        return;
+        return Ok(());
     };
     let value = value.trim();
     match key.trim().to_ascii_lowercase().as_str() {
         "unit" | "units" => {
             *factor = match value.split_whitespace().next().unwrap_or("") {
                 "m" => 1.0,
+                "mm" => 1e-3,
                 "cm" => 1e-2,
                 "in" | "inch" => 0.0254,
                 "um" | "µm" => 1e-6,
-                _ => 1e-3,
+                other => {
+                    return Err(ListError::Unit {
+                        line,
+                        unit: other.into(),
+                    });
+                }
             }
         }
         "name" => *name = Some(value.to_owned()),
         _ => {}
     }
+    Ok(())
 }
 
 fn parse(line: &str) -> Option<Vec2> {
@@ -167,5 +187,11 @@ mod tests {
             Err(ListError::NoArea)
         );
         assert!(CoordinateList::read("0 0\n1 inf\n").is_err());
+        assert!(
+            CoordinateList::read("# unit: furlong\n0 0\n")
+                .unwrap_err()
+                .to_string()
+                .contains("furlong")
+        );
     }
 }

@@ -1,7 +1,7 @@
 //! Shape limits along contours: values with exact gradients by the control points.
 //!
 //! A limit along a contour is sampled; each sample is one inequality. Where a limit is close to its bound the
-//! samples are dense enough that it slips by a fifth of a per mille of a span between them.
+//! samples are dense enough that it slips by about 0.2 % between them.
 
 pub mod curvature;
 pub mod gap;
