@@ -157,8 +157,9 @@ fn sketch_panel(studio: &mut Studio, ui: &mut Ui, units: Units) {
         });
         if matches!(studio.selection, Selection::Nothing) {
             ui.add_space(8.0);
-            ui.strong("Notes");
-            ui.add(egui::TextEdit::multiline(&mut studio.project.notes).desired_rows(4).hint_text("notes of the study").id_salt("notes"));
+            let label = ui.strong("Notes").id;
+            ui.add(egui::TextEdit::multiline(&mut studio.project.notes).desired_rows(4).hint_text("notes of the study").id_salt("notes"))
+            .labelled_by(label);
         }
         if let Some(selection) = chosen {
             studio.selection = selection;

@@ -140,6 +140,16 @@ impl Studio {
         self.link.is_improving()
     }
 
+    /// Steps taken by the present or last improvement.
+    pub fn steps_taken(&self) -> usize {
+        self.link
+            .steps
+            .iter()
+            .filter(|s| s.accepted)
+            .count()
+            .saturating_sub(1)
+    }
+
     /// Screen place of a point of the drawing at the last frame.
     pub fn screen_from_world(&self, place_m: Vec2) -> Option<egui::Pos2> {
         self.canvas.screen_from_world(place_m)

@@ -30,8 +30,8 @@ pub fn show(
     }
     for caution in cautions {
         let (sign, colour) = match caution.level {
-            CautionLevel::Warning => ("⚠", Some(bad)),
-            CautionLevel::Caution => ("⚠", Some(warn)),
+            CautionLevel::Warning => ("!", Some(bad)),
+            CautionLevel::Caution => ("!", Some(warn)),
             CautionLevel::Note => ("•", None),
         };
         let text = RichText::new(format!("{sign} {}", caution.text));

@@ -50,8 +50,8 @@ pub fn show(
                 {
                     removed = Some(i);
                 }
-                ui.label(title(limit));
-                insert_choice(ui, design, limit);
+                let label = ui.label(title(limit)).id;
+                insert_choice(ui, design, limit, label);
             });
             ui.horizontal_wrapped(|ui| {
                 ui.add_space(20.0);
@@ -81,7 +81,7 @@ pub fn show(
     }
     if let Some(missing) = design.bounding_limit_missing() {
         ui.add_space(4.0);
-        ui.label(RichText::new(format!("⚠ {missing}")).color(ui.visuals().warn_fg_color));
+        ui.label(RichText::new(format!("! {missing}")).color(ui.visuals().warn_fg_color));
     }
     edits
 }
@@ -134,7 +134,7 @@ fn title(limit: &Limit) -> &'static str {
     }
 }
 
-fn insert_choice(ui: &mut Ui, design: &Design, limit: &mut Limit) {
+fn insert_choice(ui: &mut Ui, design: &Design, limit: &mut Limit, label: egui::Id) {
     let slot = match limit {
         Limit::Area { insert, .. }
         | Limit::Perimeter { insert, .. }
@@ -153,7 +153,10 @@ fn insert_choice(ui: &mut Ui, design: &Design, limit: &mut Limit) {
             for insert in &design.inserts {
                 ui.selectable_value(slot, Some(insert.name.clone()), &insert.name);
             }
-        });
+        })
+        .response
+        .labelled_by(label)
+        .on_hover_text("Which insert this limit is for");
 }
 
 fn bounds(ui: &mut Ui, limit: &mut Limit, units: Units) {
@@ -173,16 +176,20 @@ fn bounds(ui: &mut Ui, limit: &mut Limit, units: Units) {
     };
     let optional = |ui: &mut Ui, name: &str, kind: Kind, slot: &mut Option<f64>, usual: f64| {
         let mut on = slot.is_some();
-        if ui
-            .checkbox(&mut on, name)
-            .on_hover_text("Use this bound")
-            .changed()
-        {
+        let used = ui.checkbox(&mut on, name).on_hover_text("Use this bound");
+        if used.changed() {
             *slot = on.then_some(usual);
         }
         if let Some(value) = slot
-            && let Some(new) =
-                bare_quantity(ui, units, name, "Bound of this limit", kind, *value, None)
+            && let Some(new) = bare_quantity(
+                ui,
+                units,
+                name,
+                "Bound of this limit",
+                kind,
+                *value,
+                Some(used.id),
+            )
         {
             *value = new;
         }
