@@ -3,7 +3,6 @@
 use super::Hooks;
 use super::exit::{CommandError, sound};
 use super::progress::Progress;
-use crate::report::table::aim_in_words;
 use crate::study::{Event, Failure, Project, Request, StepRecord, Worker};
 use std::path::Path;
 use std::time::Duration;
@@ -27,7 +26,7 @@ pub(super) fn until_end(
 ) -> Result<Event, CommandError> {
     /// How long one look into the mailbox lasts; only so that it need not be endless.
     const LOOK: Duration = Duration::from_secs(1);
-    let (_, unit) = aim_in_words(&request.case().design.aim);
+    let unit = request.case().design.aim.unit();
     let mut progress = Progress::new();
     let worker = Worker::new(hooks.make_engine, || {});
     let run = worker.submit(request);

@@ -4,6 +4,7 @@
 //! (curvature, gaps) and at single points (corners).
 
 use crate::base::Vec2;
+use crate::geometry::contour::distance_to_chord;
 use crate::geometry::{BoundaryTag, Curve, Domain};
 
 /// Fineness of a mesh. Sizes are relative, so that one rule serves every scale.
@@ -238,11 +239,4 @@ fn nearest_other(curves: &[Sampled], index: usize, place: Vec2) -> f64 {
         .flat_map(|(_, c)| c.points.windows(2))
         .map(|w| distance_to_chord(place, w[0], w[1]))
         .fold(f64::INFINITY, f64::min)
-}
-
-/// Distance from a point to a straight piece.
-pub(super) fn distance_to_chord(p: Vec2, a: Vec2, b: Vec2) -> f64 {
-    let d = b - a;
-    let t = ((p - a).dot(d) / d.norm_squared()).clamp(0.0, 1.0);
-    p.distance(a + d * if t.is_finite() { t } else { 0.0 })
 }

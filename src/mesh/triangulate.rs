@@ -4,9 +4,10 @@
 
 use super::MeshSettings;
 use super::error::MeshError;
-use super::sizing::{Sizing, distance_to_chord};
+use super::sizing::Sizing;
 use super::tri_mesh::{BoundaryEdge, TriMesh};
 use crate::base::{Vec2, Watch};
+use crate::geometry::contour::distance_to_chord;
 use crate::geometry::{BoundaryTag, Domain};
 use spade::{ConstrainedDelaunayTriangulation, Point2, Triangulation};
 use std::collections::{BTreeMap, BinaryHeap};

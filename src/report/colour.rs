@@ -1,8 +1,8 @@
-//! Colours of fields: from dark blue over rose to pale yellow, lightness rising evenly, so that the order of
+//! Colours of fields: from dark blue over brick red to straw, lightness rising evenly, so that the order of
 //! values survives a grey print and every kind of colour vision.
 //!
 //! Rule, in CIELAB (CIE 1976, white D65) for a fraction s: `L* = 14 + 80 s`, `b* = -48 + 100 s`,
-//! `a* = 14 + 26 sin(pi s)`; where the screen cannot show that (sRGB), a* and b* shrink together and L* stays.
+//! `a* = 8 - 16 s + 36 sin(pi s)`; where the screen cannot show that (sRGB), a* and b* shrink together and L* stays.
 //! Red-green confusions lie along a*; what a* adds can be lost, since L* and b* both rise with s.
 
 use std::f64::consts::PI;
@@ -24,7 +24,7 @@ pub fn of_fraction(s: f64) -> [u8; 3] {
 
 fn shade(s: f64) -> [u8; 3] {
     let lightness = 14.0 + 80.0 * s;
-    let (a, b) = (14.0 + 26.0 * (PI * s).sin(), -48.0 + 100.0 * s);
+    let (a, b) = (8.0 - 16.0 * s + 36.0 * (PI * s).sin(), -48.0 + 100.0 * s);
     let shown = |chroma: f64| linear_of_lab([lightness, a * chroma, b * chroma]);
     let fits = |rgb: [f64; 3]| rgb.iter().all(|c| (0.0..=1.0).contains(c));
     let mut chroma = 1.0;

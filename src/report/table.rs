@@ -10,21 +10,9 @@ use std::fmt::Write;
 /// Significant digits on the terminal: more than the figures are good for, enough to compare two runs.
 const DIGITS: usize = 5;
 
-/// The aim in words with the unit of its value.
-pub fn aim_in_words(aim: &Aim) -> (&'static str, &'static str) {
-    match aim {
-        Aim::MostHeat {} => ("most heat from the inserts", "W/m"),
-        Aim::LeastTotalPressureLoss {} => ("least total pressure loss", "Pa"),
-        Aim::LeastPumpingPower {} => ("least pumping power", "W/m"),
-        Aim::MostHeatPerPumpingPower {} => ("most heat per pumping power", "1"),
-        Aim::LeastPeakTemperature {} => ("least peak surface temperature", "K"),
-        Aim::LeastDrag {} => ("least drag", "N/m"),
-    }
-}
-
 /// One line an iteration; the heads carry the units. Text is quoted, numbers have all their digits.
 pub fn history_csv(aim: &Aim, history: &[StepRecord]) -> String {
-    let (words, unit) = aim_in_words(aim);
+    let (words, unit) = (aim.words(), aim.unit());
     let mut csv = String::new();
     let mut heads = vec![
         "step".to_owned(),
@@ -133,7 +121,8 @@ fn first_null(value: &Value, key: String) -> Option<String> {
 
 /// The report of an improvement, from its result.
 pub fn improve_report(improved: &Improved) -> ImproveReport {
-    let (words, unit) = aim_in_words(&improved.best.case.design.aim);
+    let aim = &improved.best.case.design.aim;
+    let (words, unit) = (aim.words(), aim.unit());
     ImproveReport {
         start: improved.start.report.clone(),
         r#final: improved.best.report.clone(),
@@ -227,7 +216,8 @@ pub fn solve_summary(report: &SolveReport) -> String {
 
 /// An improvement for the terminal: the best state, what was gained, the limits.
 pub fn improve_summary(start: &Solved, best: &Solved, stop_sentence: &str) -> String {
-    let (words, unit) = aim_in_words(&best.case.design.aim);
+    let aim = &best.case.design.aim;
+    let (words, unit) = (aim.words(), aim.unit());
     let mut text = solve_summary(&best.report);
     let gain = 100.0 * (best.aim_value / start.aim_value - 1.0);
     let _ = writeln!(

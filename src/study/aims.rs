@@ -9,11 +9,11 @@ impl Aim {
     /// In words, for tables and titles.
     pub fn words(&self) -> &'static str {
         match self {
-            Self::MostHeat {} => "most heat",
+            Self::MostHeat {} => "most heat from the inserts",
             Self::LeastTotalPressureLoss {} => "least total pressure loss",
             Self::LeastPumpingPower {} => "least pumping power",
             Self::MostHeatPerPumpingPower {} => "most heat per pumping power",
-            Self::LeastPeakTemperature {} => "least peak temperature",
+            Self::LeastPeakTemperature {} => "least peak surface temperature",
             Self::LeastDrag {} => "least drag",
         }
     }

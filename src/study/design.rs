@@ -198,6 +198,24 @@ pub enum Limit {
     },
 }
 
+impl Limit {
+    /// In words, without numbers.
+    pub fn words(&self) -> &'static str {
+        match self {
+            Self::Area { .. } => "area",
+            Self::Perimeter { .. } => "perimeter",
+            Self::WallGap { .. } => "gap to the walls",
+            Self::InsertGap { .. } => "gap between inserts",
+            Self::CurvatureRadius { .. } => "radius of curvature",
+            Self::Thickness { .. } => "thickness",
+            Self::BoundingBox { .. } => "bounding box",
+            Self::Centroid { .. } => "centroid",
+            Self::Heat { .. } => "heat",
+            Self::TotalPressureDrop { .. } => "total pressure drop",
+        }
+    }
+}
+
 /// Three fixed rules of fineness.
 #[derive(Clone, Copy, Debug, Default, PartialEq, Eq, Serialize, Deserialize)]
 #[serde(rename_all = "snake_case")]

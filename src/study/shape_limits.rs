@@ -69,7 +69,7 @@ impl ShapeLimits {
 
     /// Name of a limit by its number, for sentences.
     pub fn name(&self, limit: usize) -> String {
-        describe(&self.limits[limit]).into()
+        self.limits[limit].words().into()
     }
 
     fn concerns(&self, wanted: &Option<String>, insert: usize) -> bool {
@@ -495,21 +495,5 @@ pub fn line(name: String, unit: &str, value: f64, bound: f64, sign: f64) -> Limi
         bound,
         slack,
         active: sign == 0.0 || slack < ACTIVE * bound.abs(),
-    }
-}
-
-/// A limit in words, without numbers.
-fn describe(limit: &Limit) -> &'static str {
-    match limit {
-        Limit::Area { .. } => "area",
-        Limit::Perimeter { .. } => "perimeter",
-        Limit::WallGap { .. } => "gap to the walls",
-        Limit::InsertGap { .. } => "gap between inserts",
-        Limit::CurvatureRadius { .. } => "radius of curvature",
-        Limit::Thickness { .. } => "thickness",
-        Limit::BoundingBox { .. } => "bounding box",
-        Limit::Centroid { .. } => "centroid",
-        Limit::Heat { .. } => "heat",
-        Limit::TotalPressureDrop { .. } => "total pressure drop",
     }
 }

@@ -50,7 +50,7 @@ pub fn show(
                 {
                     removed = Some(i);
                 }
-                let label = ui.label(title(limit)).id;
+                let label = ui.label(limit.words()).id;
                 insert_choice(ui, design, limit, label);
             });
             ui.horizontal_wrapped(|ui| {
@@ -116,21 +116,6 @@ fn kind_of(unit: &str) -> Kind {
         "K" => Kind::Temperature,
         "N/m" => Kind::Force,
         _ => Kind::Number,
-    }
-}
-
-fn title(limit: &Limit) -> &'static str {
-    match limit {
-        Limit::Area { .. } => "area",
-        Limit::Perimeter { .. } => "perimeter",
-        Limit::WallGap { .. } => "gap to the walls",
-        Limit::InsertGap { .. } => "gap between inserts",
-        Limit::CurvatureRadius { .. } => "radius of curvature",
-        Limit::Thickness { .. } => "thickness",
-        Limit::BoundingBox { .. } => "bounding box",
-        Limit::Centroid { .. } => "centroid",
-        Limit::Heat { .. } => "heat",
-        Limit::TotalPressureDrop { .. } => "total pressure drop",
     }
 }
 
