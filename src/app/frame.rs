@@ -130,10 +130,10 @@ fn status(studio: &mut Studio, ui: &mut Ui) {
                 0.0
             };
             let width = (ui.available_width() - kept).max(80.0);
-            ui.add_sized(
-                [width, 18.0],
-                egui::Label::new(text).truncate().halign(Align::LEFT),
-            );
+            let area = egui::vec2(width, 18.0);
+            ui.allocate_ui_with_layout(area, Layout::left_to_right(Align::Center), |ui| {
+                ui.add(egui::Label::new(text).truncate());
+            });
         }
         ui.with_layout(Layout::right_to_left(Align::Center), |ui| {
             if let Some(probe) = &studio.probe {

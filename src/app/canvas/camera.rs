@@ -13,7 +13,7 @@ pub struct Camera {
 }
 
 /// Part of the canvas that a fitted drawing takes.
-const FITTED: f64 = 0.8;
+const FITTED: f64 = 0.9;
 /// Closest and farthest zoom relative to the fitted one.
 const ZOOM_RANGE: [f64; 2] = [0.2, 400.0];
 
@@ -24,7 +24,7 @@ impl Camera {
         let fit = |screen: f32, world: f64| f64::from(screen) * FITTED / world.max(1e-12);
         Self {
             centre_m: bounds_m[0].lerp(bounds_m[1], 0.5),
-            scale: fit(rect.width() - 40.0, size.x)
+            scale: fit(rect.width() - 150.0, size.x)
                 .min(fit(rect.height() - 60.0, size.y))
                 .max(1e-6),
         }

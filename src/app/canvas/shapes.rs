@@ -361,7 +361,7 @@ impl Pen<'_> {
             return;
         }
         self.dimension(low, vec2(high.x, low.y), egui::vec2(0.0, 30.0));
-        self.dimension(vec2(high.x, low.y), high, egui::vec2(46.0, 0.0));
+        self.dimension(vec2(high.x, low.y), high, egui::vec2(66.0, 0.0));
         for (insert, m) in input.design.inserts.iter().zip(input.measures) {
             let [a, b] = m.box_m;
             let across = self.at(a).distance(self.at(b));

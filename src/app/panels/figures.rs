@@ -123,8 +123,11 @@ pub fn show(
         .show(ui, |ui| {
             ui.weak("");
             ui.weak("value");
-            ui.weak(kept.map_or("no variant kept".to_owned(), |k| format!("against {}", k.0)))
-                .on_hover_text("Differences against the kept variant chosen under Variants");
+            let against = kept.map_or("no variant kept yet".to_owned(), |k| {
+                format!("Difference against \"{}\"", k.0)
+            });
+            ui.weak(if kept.is_some() { "change" } else { "" })
+                .on_hover_text(against);
             ui.end_row();
             for (name, help, kind, get, better) in ROWS {
                 line(
