@@ -36,7 +36,7 @@ impl Default for Settings {
             text_scale: 1.0,
             sketch: true,
             figures: true,
-            plots: true,
+            plots: false,
             recent: Vec::new(),
         }
     }

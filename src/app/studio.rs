@@ -372,6 +372,7 @@ impl Studio {
             Command::Improve => {
                 self.message = self.project.bounding_limit_missing().map(|m| (m, true));
                 self.tab = Tab::History;
+                self.settings.plots = true;
                 let case = self.case();
                 self.link.improve(&case);
                 log("improving");

@@ -25,7 +25,7 @@ impl Camera {
         Self {
             centre_m: bounds_m[0].lerp(bounds_m[1], 0.5),
             scale: fit(rect.width() - 150.0, size.x)
-                .min(fit(rect.height() - 60.0, size.y))
+                .min(fit(rect.height() - 150.0, size.y))
                 .max(1e-6),
         }
     }

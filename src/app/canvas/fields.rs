@@ -13,8 +13,8 @@ use std::sync::Arc;
 
 /// Iso-lines between the ends of the range.
 const ISO_LINES: usize = 11;
-/// Streamlines across the drawing's height.
-const STREAMLINES: usize = 14;
+/// Distance of streamlines, in cells of the raster.
+const APART: f64 = 4.0;
 /// Cells of the velocity raster along the longer side.
 const RASTER: usize = 360;
 
@@ -404,7 +404,7 @@ impl Raster {
     /// Lines through evenly spread seeds, each kept away from those before.
     fn streamlines(&self) -> Vec<Vec<Vec2>> {
         let extent = vec2(self.size[0] as f64, self.size[1] as f64) * self.step;
-        let apart = extent.x.min(extent.y) / STREAMLINES as f64;
+        let apart = APART * self.step;
         let cells = [
             (extent.x / apart).ceil() as usize + 1,
             (extent.y / apart).ceil() as usize + 1,

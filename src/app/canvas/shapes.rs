@@ -223,21 +223,34 @@ impl Pen<'_> {
             let piece = &input.design.duct[i];
             let end = segment.point(1.0);
             let start = segment.point(0.0);
-            let top = if end.y > start.y { end } else { start };
+            // Inlets are labelled above, outlets below, so that the two never meet over a short duct.
+            let upper = (end.y > start.y) != out;
+            let corner = if upper { end } else { start };
             let text = format!(
                 "{}: {}",
                 piece.name,
                 flow_words(&piece.flow, self.inch_based)
             );
             let outward = segment.derivative(0.5).right().normalized();
-            let anchor = if outward.x < -0.3 {
-                Align2::LEFT_BOTTOM
+            let side = if outward.x < -0.3 {
+                egui::Align::Min
             } else if outward.x > 0.3 {
-                Align2::RIGHT_BOTTOM
+                egui::Align::Max
             } else {
-                Align2::CENTER_BOTTOM
+                egui::Align::Center
             };
-            self.label(self.at(top) - egui::vec2(0.0, 9.0), anchor, &text, colour);
+            let rise = if out { 9.0 } else { -9.0 };
+            let vertical = if out {
+                egui::Align::Min
+            } else {
+                egui::Align::Max
+            };
+            self.label(
+                self.at(corner) + egui::vec2(0.0, rise),
+                Align2([side, vertical]),
+                &text,
+                colour,
+            );
         }
     }
 
