@@ -19,6 +19,9 @@ use crate::physics::{Discretisation, PhysicsError, Problem, Quantities, State, h
 use std::sync::Arc;
 use std::time::Instant;
 
+/// A limit missed by less than this part of its bound is met: equalities are restored to about 1e-10.
+const MET: f64 = 1e-8;
+
 /// Step of the gradient check, in sizes: truncation of the five-point difference is then about 1e-9.
 const CHECK_STEP: f64 = 2e-3;
 
@@ -352,7 +355,7 @@ impl Engine for FlowEngine {
                 best
             }
         };
-        let (stop, stop_sentence) = stop_words(&outcome.stop, &problem, outcome.violation);
+        let (stop, stop_sentence) = stop_words(&outcome.stop, &problem, &best.limits);
         Ok(Improved {
             start,
             best,
@@ -430,11 +433,16 @@ fn step_record(problem: &ShapeProblem, record: &Record) -> StepRecord {
     }
 }
 
-fn stop_words(stop: &Stop, problem: &ShapeProblem, violation: f64) -> (StopReason, String) {
-    let unmet = if violation > 1e-6 {
-        " The limits on heat or pressure drop are not met by the best shape found."
+fn stop_words(stop: &Stop, problem: &ShapeProblem, limits: &[LimitReport]) -> (StopReason, String) {
+    let broken: Vec<&str> = limits
+        .iter()
+        .filter(|l| l.slack < -MET * l.bound.abs())
+        .map(|l| l.name.as_str())
+        .collect();
+    let unmet = if broken.is_empty() {
+        String::new()
     } else {
-        ""
+        format!(" Not met by the best shape found: {}.", broken.join(", "))
     };
     let (reason, sentence) = match stop {
         Stop::Converged => (

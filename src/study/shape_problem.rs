@@ -21,7 +21,7 @@ use nalgebra::DMatrix;
 use std::sync::Arc;
 
 /// Movement of a control point, in sizes, after which the mesh is made anew.
-const STRETCH: f64 = 0.08;
+const STRETCH: f64 = 0.16;
 /// State-dependent limits are aimed this far inside (relative): new meshes scatter by less.
 const MARGIN: f64 = 2e-4;
 /// Smoothing length of the metric, in sizes.
