@@ -198,6 +198,57 @@ fn a_contour_list_is_read_back_within_its_tolerance() {
 }
 
 #[test]
+fn a_list_is_imported_as_an_insert() {
+    let folder = tempfile::tempdir().unwrap();
+    let sample = samples().join("water_pin.json");
+    let file = sample.to_str().unwrap();
+    let out = run(
+        folder.path(),
+        &["contour", file, "--chord-mm", "0.001", "-o", "list.txt"],
+    );
+    assert_eq!(out.status.code(), Some(0));
+    let out = run(
+        folder.path(),
+        &[
+            "import",
+            file,
+            "list.txt",
+            "--insert",
+            "pin",
+            "-o",
+            "again.json",
+        ],
+    );
+    assert_eq!(out.status.code(), Some(0), "{}", words(&out.stderr));
+    let before = flumeloft::study::Project::load(&sample)
+        .unwrap()
+        .design
+        .inserts[0]
+        .contour();
+    let after = flumeloft::study::Project::load(&folder.path().join("again.json"))
+        .unwrap()
+        .design
+        .inserts[0]
+        .contour();
+    assert!(
+        (after.area() / before.area() - 1.0).abs() < 3e-3,
+        "{} {}",
+        after.area(),
+        before.area()
+    );
+    let overlap = run(
+        folder.path(),
+        &["import", file, "list.txt", "-o", "twice.json"],
+    );
+    assert_eq!(
+        overlap.status.code(),
+        Some(2),
+        "a second insert on top of the first must be refused"
+    );
+    assert!(overlap.stdout.is_empty());
+}
+
+#[test]
 fn too_small_a_budget_is_told() {
     let folder = tempfile::tempdir().unwrap();
     let text = std::fs::read_to_string(samples().join("air_tube.json")).unwrap();

@@ -4,8 +4,6 @@ use super::canvas::field_of;
 use super::studio::Studio;
 use super::words::{Edit, Selection};
 use crate::base::units::Kind;
-use crate::geometry::coordinate_list::CoordinateList;
-use crate::geometry::fit::closed_spline;
 use crate::report::contour_file::{self, LengthUnit};
 use crate::report::{Figure, table};
 use crate::study::Insert;
@@ -78,41 +76,13 @@ pub fn history(studio: &mut Studio, path: &Path) -> Result<String, String> {
 pub fn import(studio: &mut Studio, path: &Path) -> Result<String, String> {
     let text = std::fs::read_to_string(path)
         .map_err(|e| format!("Cannot read {}: {e}.", path.display()))?;
-    let list = CoordinateList::read(&text).map_err(|e| e.to_string())?;
-    let fitted = closed_spline(&list.points_m, None);
     let design = &studio.project.design;
-    let stem = list
-        .name
-        .clone()
-        .filter(|n| !n.trim().is_empty())
-        .unwrap_or_else(|| "imported".into());
-    let name = (1..)
-        .map(|i| {
-            if i == 1 {
-                stem.clone()
-            } else {
-                format!("{stem} {i}")
-            }
-        })
-        .find(|n| !design.inserts.iter().any(|i| i.name == *n))
-        .unwrap_or_default();
-    let thermal = design.inserts.first().map_or(
-        crate::physics::ThermalCondition::FixedTemperature {
-            temperature_k: 330.0,
-        },
-        |i| i.thermal.clone(),
-    );
-    let index = design.inserts.len();
-    let to = Insert {
-        name: name.clone(),
-        points_m: fitted.spline.controls().to_vec(),
-        frozen: false,
-        thermal,
-    };
+    let (to, deviation_m) = design.insert_from_list(&text).map_err(|e| e.to_string())?;
+    let (index, name) = (design.inserts.len(), to.name.clone());
     let points = to.points_m.len();
     studio.edit_whole(Edit::SetInsert { insert: index, to });
     studio.selection = Selection::Insert(index);
-    let deviation = Kind::Length.text(fitted.deviation_m, studio.settings.inch_based);
+    let deviation = Kind::Length.text(deviation_m, studio.settings.inch_based);
     Ok(format!(
         "Read {name}: {points} control points, largest deviation from the list {deviation}."
     ))

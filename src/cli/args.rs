@@ -52,6 +52,19 @@ pub enum Command {
         #[arg(long, value_name = "PATH|-")]
         json: Option<PathBuf>,
     },
+    /// Read a plain list of coordinates as an insert, and tell how far its spline departs from the list.
+    Import {
+        /// Project file.
+        file: PathBuf,
+        /// List of coordinates.
+        list: PathBuf,
+        /// Insert that takes the contour; a new one when not given.
+        #[arg(long, value_name = "NAME")]
+        insert: Option<String>,
+        /// Project file to write; the same when not given.
+        #[arg(short, long, value_name = "PATH")]
+        output: Option<PathBuf>,
+    },
     /// Write the contour of an insert as a plain list of coordinates.
     Contour {
         /// Project file.

@@ -4,6 +4,7 @@ mod args;
 mod check;
 mod contour;
 mod exit;
+mod import;
 mod improve;
 mod output;
 mod progress;
@@ -50,6 +51,12 @@ pub fn run(arguments: impl IntoIterator<Item = OsString>, hooks: Hooks) -> Exit 
             out,
             json,
         } => improve::improve(&file, steps, out.as_deref(), json.as_deref(), hooks),
+        Command::Import {
+            file,
+            list,
+            insert,
+            output,
+        } => import::import(&file, &list, insert.as_deref(), output.as_deref()),
         Command::Contour {
             file,
             insert,

@@ -9,6 +9,7 @@ pub mod file;
 #[cfg(test)]
 mod file_tests;
 pub mod flow_engine;
+mod import;
 mod json_layout;
 mod mailbox;
 pub mod picture;

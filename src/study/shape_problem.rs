@@ -15,7 +15,7 @@ use crate::optimise::{Evaluation, Geometry, Problem, Refusal, Settled};
 use crate::physics::figures::{self, PeakScale, Ports};
 use crate::physics::measures::Measured;
 use crate::physics::transfer::carried;
-use crate::physics::{Discretisation, State, solve};
+use crate::physics::{Discretisation, Quantities, State, solve};
 use crate::sensitivity::{ControlChain, shape_gradient};
 use nalgebra::DMatrix;
 use std::sync::Arc;
@@ -24,6 +24,10 @@ use std::sync::Arc;
 const STRETCH: f64 = 0.16;
 /// State-dependent limits are aimed this far inside (relative): new meshes scatter by less.
 const MARGIN: f64 = 2e-4;
+/// A mesh that misses the area by this part, or a state whose dissipation misses the ports' power by that, is not
+/// believed: sound ones are at least ten times better, inverted or starved ones far worse.
+const WRONG_AREA: f64 = 1e-3;
+const WRONG_ENERGY: f64 = 2e-2;
 /// Smoothing length of the metric, in sizes.
 const SMOOTHING: f64 = 0.25;
 
@@ -274,6 +278,31 @@ pub(super) fn state_limit_lines(case: &Case, state: &State) -> Vec<LimitReport> 
         .collect()
 }
 
+/// Cheap alarms on each state, before its value is believed: mesh area against drawn area, dissipation against the
+/// ports' power.
+fn alarm(state: &State, domain: &Domain) -> Result<(), Refusal> {
+    let q = Quantities::new(state);
+    let holes: f64 = domain
+        .inserts
+        .iter()
+        .filter(|i| !i.solid)
+        .map(|i| i.contour.area())
+        .sum();
+    let area = q.mesh_area_m2 / (domain.outline.area() - holes) - 1.0;
+    if area.abs() > WRONG_AREA {
+        return Err(refuse(format!(
+            "the mesh misses the drawn area by {area:.1e}"
+        )));
+    }
+    if q.energy_relative.abs() > WRONG_ENERGY {
+        return Err(refuse(format!(
+            "dissipation and pressure work differ by {:.1e}",
+            q.energy_relative
+        )));
+    }
+    Ok(())
+}
+
 fn from_physics(error: crate::physics::PhysicsError) -> Refusal {
     match error {
         crate::physics::PhysicsError::Cancelled(c) => Refusal::Cancelled(c),
@@ -359,6 +388,7 @@ impl Problem for ShapeProblem {
             carried(near, to, &mesh)
         };
         self.state = solve(to, mesh, start.as_deref(), watch).map_err(from_physics)?;
+        alarm(&self.state, &domain)?;
         self.contours = contours;
         Ok(self.value())
     }
