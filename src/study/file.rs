@@ -97,6 +97,29 @@ pub enum FileError {
     },
 }
 
+impl FileError {
+    /// A key may hold escaped line breaks; a sentence must not.
+    fn on_one_line(self) -> Self {
+        let flat = |text: String| text.replace(|c: char| c.is_control(), " ");
+        match self {
+            Self::Key { key, reason } => Self::Key {
+                key: flat(key),
+                reason: flat(reason),
+            },
+            Self::Syntax {
+                line,
+                column,
+                reason,
+            } => Self::Syntax {
+                line,
+                column,
+                reason: flat(reason),
+            },
+            other => other,
+        }
+    }
+}
+
 impl Project {
     /// Read a project from JSON text. What is read is well-formed; whether it can be computed is told by
     /// [`Project::faults`].
@@ -120,7 +143,8 @@ impl Project {
         }
         // From the text, not from `value`: only so are keys written twice refused.
         let project: Self = serde_json::from_str(text)
-            .map_err(|error| blame(&value).unwrap_or_else(|| at_line(&error)))?;
+            .map_err(|error| blame(&value).unwrap_or_else(|| at_line(&error)))
+            .map_err(FileError::on_one_line)?;
         project.check_counts()?;
         Ok(project)
     }

@@ -289,3 +289,13 @@ proptest! {
         }
     }
 }
+
+/// Found by the damage above: a key with an escaped line break broke the one line of its refusal.
+#[test]
+fn a_line_break_in_a_key_stays_out_of_the_sentence() {
+    let damaged = text().replacen("\"name\"", "\"\\name\"", 1);
+    let error = Project::from_json(&damaged)
+        .expect_err("refused")
+        .to_string();
+    assert!(!error.contains('\n'), "{error}");
+}
