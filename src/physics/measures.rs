@@ -255,6 +255,14 @@ pub fn mechanical_power(state: &State, port: BoundaryTag) -> Measured {
     })
 }
 
+/// Kinetic energy carried in by the flow through a port, W/m.
+pub fn kinetic_inflow(state: &State, port: BoundaryTag) -> Measured {
+    let density = state.discretisation.flow.density;
+    boundary_integral(state, port, |at| {
+        super::flow::dynamic_part(at.u, density) * at.outflow()
+    })
+}
+
 /// Surface temperature integrated along a curve, K m.
 pub fn surface_temperature(state: &State, tag: BoundaryTag) -> Measured {
     boundary_integral(state, tag, |at| at.t * at.length())

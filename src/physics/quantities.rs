@@ -130,11 +130,7 @@ impl Quantities {
             .map(|i| i.heat_w_m.abs())
             .chain(piece_heat.iter().map(|h| h.abs()))
             .fold(0.0, f64::max);
-        let power: f64 = problem
-            .ports()
-            .iter()
-            .map(|&t| measures::mechanical_power(state, t).value)
-            .sum();
+        let power = port_power(state);
         let (dissipation, mesh_area) = dissipation_and_area(state);
         let relative =
             |difference: f64, scale: f64| if scale > 0.0 { difference / scale } else { 0.0 };
@@ -169,6 +165,35 @@ impl Quantities {
             outlets: ports.outlets.iter().map(|p| p.0).collect(),
         }
     }
+}
+
+/// Power that the ports put in, W/m. With the flow itself as test function the weak form says
+///   integral of mu |grad u|^2 = sum over fixed unknowns of u R - kinetic energy out - sum over pressure ports of P u.n,
+/// so pressure ports count with their total pressure, given velocities with their reactions.
+fn port_power(state: &State) -> f64 {
+    let flow = &state.discretisation.flow;
+    let rows = state
+        .flow
+        .iter()
+        .zip(&state.flow_reactions)
+        .zip(&flow.layout.fixed);
+    let given: f64 = rows
+        .filter(|(_, fixed)| **fixed)
+        .map(|((u, r), _)| u * r)
+        .sum();
+    let by_pressure = |t: &BoundaryTag| flow.ports.iter().any(|p| p.tag == *t);
+    let ports = state.discretisation.problem.ports();
+    let others: f64 = ports
+        .iter()
+        .map(|t| {
+            if by_pressure(t) {
+                measures::mechanical_power(state, *t).value
+            } else {
+                measures::kinetic_inflow(state, *t).value
+            }
+        })
+        .sum();
+    given + others
 }
 
 fn insert_figures(state: &State, insert: usize) -> InsertFigures {
