@@ -24,15 +24,25 @@ pub struct FieldCache {
     key: Option<Key>,
     colours: Vec<Color32>,
     iso: Vec<[Vec2; 2]>,
-    streams: Option<(usize, Vec<Vec<Vec2>>)>,
+    streams: Option<(Held, Vec<Vec<Vec2>>)>,
     mesh: Option<(Camera, Rect, Arc<Mesh>)>,
     /// Range painted, SI.
     pub range: [f64; 2],
 }
 
+/// A snapshot held so that its address cannot be given to another; equal when it is the same one.
+#[derive(Clone)]
+struct Held(Arc<FieldSnapshot>);
+
+impl PartialEq for Held {
+    fn eq(&self, other: &Self) -> bool {
+        Arc::ptr_eq(&self.0, &other.0)
+    }
+}
+
 #[derive(Clone, PartialEq)]
 struct Key {
-    snapshot: usize,
+    snapshot: Held,
     field: FieldChoice,
     range: Option<[f64; 2]>,
     stale: bool,
@@ -71,7 +81,7 @@ impl FieldCache {
         dark: bool,
     ) {
         let key = Key {
-            snapshot: Arc::as_ptr(shot) as usize,
+            snapshot: Held(shot.clone()),
             field: choice,
             range,
             stale,
@@ -163,7 +173,7 @@ impl FieldCache {
         rect: Rect,
         shot: &Arc<FieldSnapshot>,
     ) {
-        let id = Arc::as_ptr(shot) as usize;
+        let id = Held(shot.clone());
         if self.streams.as_ref().is_none_or(|s| s.0 != id) {
             self.streams = Some((
                 id,

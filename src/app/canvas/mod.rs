@@ -54,6 +54,13 @@ pub fn show(ui: &mut Ui, state: &mut CanvasState, input: &CanvasInput) -> Canvas
             egui::CursorIcon::Crosshair
         },
     );
+    // Arrows nudge what is selected; they do not walk to the next widget.
+    let arrows = egui::EventFilter {
+        horizontal_arrows: true,
+        vertical_arrows: true,
+        ..Default::default()
+    };
+    ui.memory_mut(|m| m.set_focus_lock_filter(response.id, arrows));
     let colours = CanvasColours::new(input.dark);
     let painter = ui.painter_at(rect);
     painter.rect_filled(rect, 0.0, colours.paper);

@@ -18,6 +18,8 @@ pub struct Tool {
     drag: Option<Drag>,
     /// Text of the inline coordinate field, when open.
     typed: Option<String>,
+    /// Whether the field was there in the frame before: the key that opens it does not enter it.
+    typed_open: bool,
     /// Place of the context menu's click, m.
     menu_at: Vec2,
     menu_on: Selection,
@@ -380,8 +382,10 @@ pub fn typed_coordinates(
     output: &mut CanvasOutput,
 ) {
     let Some(mut text) = state.tool.typed.take() else {
+        state.tool.typed_open = false;
         return;
     };
+    let opened = std::mem::replace(&mut state.tool.typed_open, true);
     let Some(place) = place_of(input.design, input.selection) else {
         return;
     };
@@ -401,7 +405,7 @@ pub fn typed_coordinates(
     if ui.input(|i| i.key_pressed(Key::Escape)) {
         return;
     }
-    if ui.input(|i| i.key_pressed(Key::Enter)) && text.contains(';') {
+    if opened && ui.input(|i| i.key_pressed(Key::Enter)) && text.contains(';') {
         let parts: Vec<&str> = text.split(';').collect();
         let value = |s: &str| Kind::Length.parse(s, input.inch_based).ok();
         if let (Some(x), Some(y)) = (value(parts[0]), parts.get(1).and_then(|s| value(s))) {
