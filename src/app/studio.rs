@@ -372,6 +372,7 @@ impl Studio {
             Command::Improve => {
                 self.message = self.project.bounding_limit_missing().map(|m| (m, true));
                 self.tab = Tab::History;
+                self.looked_at = None;
                 self.settings.plots = true;
                 let case = self.case();
                 self.link.improve(&case);
@@ -549,6 +550,13 @@ impl Studio {
 
     /// Replace everything by another project.
     pub fn open(&mut self, project: Project, path: Option<PathBuf>) {
+        if self.link.is_improving() {
+            self.message = Some((
+                "An improvement is running: stop it before opening another project.".into(),
+                true,
+            ));
+            return;
+        }
         if let Some(path) = &path {
             self.settings.remember(path);
             self.settings.save();

@@ -174,8 +174,8 @@ fn history(ui: &mut Ui, aim: &Aim, steps: &[StepRecord], looked_at: Option<usize
                         .color(ACCENT)
                         .radius(3.0),
                 );
-                if let Some(step) = looked_at {
-                    plot.vline(VLine::new("", steps[step].step as f64).color(ACCENT));
+                if let Some(step) = looked_at.and_then(|k| steps.get(k)) {
+                    plot.vline(VLine::new("", step.step as f64).color(ACCENT));
                 }
             });
         Plot::new("slacks")
