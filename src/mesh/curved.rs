@@ -5,7 +5,7 @@
 //! nodes of each triangle. Scalar finite-element unknowns of order `k` use the same numbering.
 
 use super::TriMesh;
-use super::reference::{self, Reference};
+use super::reference;
 use crate::base::Vec2;
 use crate::geometry::{BoundaryTag, Curve, Domain};
 use std::sync::Arc;
@@ -146,89 +146,6 @@ impl CurvedMesh {
             nodes,
             ..self.clone()
         }
-    }
-
-    /// Whether the map of a triangle is proved to have a positive determinant everywhere.
-    ///
-    /// The determinant is a polynomial of degree 2(k - 1); where all its Bernstein coefficients are positive, it
-    /// is (Johnen, Remacle and Geuzaine, J. Comput. Phys. 233, 359, 2013). Undecided triangles are cut in four.
-    pub fn is_valid(&self, triangle: usize, proof: &JacobianProof) -> bool {
-        let element = self.element(triangle);
-        let determinant = |at: [f64; 2]| {
-            let mut f = [0.0; 4];
-            for (g, &n) in proof.basis.gradients(at).iter().zip(element) {
-                let x = self.nodes[n as usize];
-                f[0] += x.x * g[0];
-                f[1] += x.x * g[1];
-                f[2] += x.y * g[0];
-                f[3] += x.y * g[1];
-            }
-            f[0] * f[3] - f[1] * f[2]
-        };
-        proof.positive(
-            &determinant,
-            [[0.0, 0.0], [1.0, 0.0], [0.0, 1.0]],
-            MOST_CUTS,
-        )
-    }
-
-    /// First triangle that is not proved valid.
-    pub fn first_invalid(&self) -> Option<usize> {
-        let proof = JacobianProof::new(self.order);
-        (0..self.mesh.triangles.len()).find(|&t| !self.is_valid(t, &proof))
-    }
-}
-
-/// Cuts in four before an undecided cell counts as inverted.
-const MOST_CUTS: usize = 3;
-
-/// Bases for the proof of positive determinants.
-pub struct JacobianProof {
-    basis: Reference,
-    determinant: Reference,
-}
-
-impl JacobianProof {
-    /// For geometry of an order.
-    pub fn new(order: usize) -> Self {
-        Self {
-            basis: Reference::new(order),
-            determinant: Reference::new((2 * (order - 1)).max(1)),
-        }
-    }
-
-    fn positive(&self, f: &dyn Fn([f64; 2]) -> f64, corners: [[f64; 2]; 3], cuts: usize) -> bool {
-        let [a, b, c] = corners;
-        let place = |[x, y]: [f64; 2]| {
-            let z = 1.0 - x - y;
-            [
-                z * a[0] + x * b[0] + y * c[0],
-                z * a[1] + x * b[1] + y * c[1],
-            ]
-        };
-        let nodal: Vec<f64> = self
-            .determinant
-            .nodes
-            .iter()
-            .map(|&n| f(place(n)))
-            .collect();
-        if nodal.iter().any(|&v| v.is_nan() || v <= 0.0) {
-            return false;
-        }
-        if self
-            .determinant
-            .bernstein_coefficients(&nodal)
-            .iter()
-            .all(|&v| v > 0.0)
-        {
-            return true;
-        }
-        let middle = |p: [f64; 2], q: [f64; 2]| [0.5 * (p[0] + q[0]), 0.5 * (p[1] + q[1])];
-        let (ab, bc, ca) = (middle(a, b), middle(b, c), middle(c, a));
-        cuts > 0
-            && [[a, ab, ca], [ab, b, bc], [ca, bc, c], [ab, bc, ca]]
-                .into_iter()
-                .all(|part| self.positive(f, part, cuts - 1))
     }
 }
 
