@@ -2,6 +2,7 @@
 
 use super::CurvedMesh;
 use super::reference::Reference;
+use super::search::{Bounds, BoxTree};
 use crate::base::{Vec2, vec2};
 
 /// Newton steps on the curved map; two or three are usual.
@@ -13,14 +14,14 @@ const RIM: f64 = 1e-9;
 pub struct Locator<'a> {
     mesh: &'a CurvedMesh,
     basis: Reference,
-    /// Bounding box of each cell, lower left and upper right, m.
-    boxes: Vec<[Vec2; 2]>,
+    /// Boxes around the cells, m.
+    boxes: BoxTree,
 }
 
 impl<'a> Locator<'a> {
     /// Boxes around all cells.
     pub fn new(mesh: &'a CurvedMesh) -> Self {
-        let boxes = (0..mesh.mesh.triangles.len())
+        let boxes: Vec<Bounds> = (0..mesh.mesh.triangles.len())
             .map(|t| {
                 let mut low = vec2(f64::INFINITY, f64::INFINITY);
                 let mut high = vec2(f64::NEG_INFINITY, f64::NEG_INFINITY);
@@ -37,18 +38,14 @@ impl<'a> Locator<'a> {
         Self {
             mesh,
             basis: Reference::new(mesh.order),
-            boxes,
+            boxes: BoxTree::new(&boxes),
         }
     }
 
     /// Cell and reference coordinates of a place, or none outside the mesh.
     pub fn find(&self, place: Vec2) -> Option<(usize, [f64; 2])> {
-        let inside = |b: &[Vec2; 2]| {
-            (b[0].x..=b[1].x).contains(&place.x) && (b[0].y..=b[1].y).contains(&place.y)
-        };
-        (0..self.boxes.len())
-            .filter(|&t| inside(&self.boxes[t]))
-            .find_map(|t| Some((t, self.invert(t, place)?)))
+        let mut near = self.boxes.holding(place).into_iter();
+        near.find_map(|t| Some((t, self.invert(t, place)?)))
     }
 
     /// Values of the nodal functions of the mesh's order at reference coordinates.

@@ -9,6 +9,8 @@ pub mod locate;
 pub mod motion;
 pub mod quality;
 pub mod reference;
+mod rim;
+mod search;
 pub mod sizing;
 pub mod structured;
 pub mod tri_mesh;

@@ -3,6 +3,7 @@
 //! The field has slope at most `growth`, so neighbouring cells differ little. Seeds stand along every curve
 //! (curvature, gaps) and at single points (corners).
 
+use super::search::Seeds;
 use crate::base::Vec2;
 use crate::geometry::contour::distance_to_chord;
 use crate::geometry::{BoundaryTag, Curve, Domain};
@@ -87,8 +88,7 @@ impl MeshSettings {
 pub struct Sizing {
     largest: f64,
     growth: f64,
-    /// (place, size, growth)
-    seeds: Vec<(Vec2, f64, f64)>,
+    seeds: Seeds,
 }
 
 /// Samples along each curve for the size rules.
@@ -98,11 +98,8 @@ impl Sizing {
     /// Seeds of a domain.
     pub fn new(domain: &Domain, settings: &MeshSettings) -> Self {
         let far = far_size(domain, settings);
-        let mut sizing = Self {
-            largest: far,
-            growth: settings.growth,
-            seeds: Vec::new(),
-        };
+        // (place, size, growth)
+        let mut seeds: Vec<(Vec2, f64, f64)> = Vec::new();
         let curves = sampled_curves(domain);
         for (index, curve) in curves.iter().enumerate() {
             let around = match curve.tag {
@@ -120,49 +117,31 @@ impl Sizing {
                 let gap = nearest_other(&curves, index, *place);
                 let size = size.min((gap / settings.cells_in_gap).max(size * SMALLEST_GAP_FACTOR));
                 if size < far {
-                    sizing.seeds.push((*place, size, settings.growth));
+                    seeds.push((*place, size, settings.growth));
                 }
             }
         }
-        sizing.corner_seeds(domain, settings, far);
+        corner_seeds(&mut seeds, domain, settings, far);
         for &place in &settings.jumps {
-            sizing
-                .seeds
-                .push((place, far * settings.jump, settings.corner_growth));
+            seeds.push((place, far * settings.jump, settings.corner_growth));
         }
         for &(place, size) in &settings.extra {
-            sizing.seeds.push((place, size, settings.corner_growth));
+            seeds.push((place, size, settings.corner_growth));
         }
-        sizing
-    }
-
-    fn corner_seeds(&mut self, domain: &Domain, settings: &MeshSettings, far: f64) {
-        let pieces = &domain.outline.pieces;
-        for (i, piece) in pieces.iter().enumerate() {
-            let next = &pieces[(i + 1) % pieces.len()];
-            let corner = piece.segment.point(1.0);
-            let (a, b) = (piece.segment.derivative(1.0), next.segment.derivative(0.0));
-            let turn = a.cross(b).atan2(a.dot(b));
-            if piece.is_port != next.is_port {
-                self.seeds
-                    .push((corner, far * settings.port_corner, settings.corner_growth));
-            } else if turn < -REENTRANT_TURN {
-                self.seeds.push((
-                    corner,
-                    far * settings.reentrant_corner,
-                    settings.corner_growth,
-                ));
-            }
+        // No rule asks for less; a size of zero or none would never end.
+        for (_, size, _) in &mut seeds {
+            *size = size.max(far * SMALLEST_SIZE);
+        }
+        Self {
+            largest: far,
+            growth: settings.growth,
+            seeds: Seeds::new(seeds),
         }
     }
 
     /// Size at a place, m.
     pub fn at(&self, place: Vec2) -> f64 {
-        self.seeds
-            .iter()
-            .fold(self.largest, |h, (x, size, growth)| {
-                h.min(size + growth * x.distance(place))
-            })
+        self.seeds.at(place, self.largest)
     }
 
     /// Growth of the field.
@@ -171,6 +150,32 @@ impl Sizing {
     }
 }
 
+fn corner_seeds(
+    seeds: &mut Vec<(Vec2, f64, f64)>,
+    domain: &Domain,
+    settings: &MeshSettings,
+    far: f64,
+) {
+    let pieces = &domain.outline.pieces;
+    for (i, piece) in pieces.iter().enumerate() {
+        let next = &pieces[(i + 1) % pieces.len()];
+        let corner = piece.segment.point(1.0);
+        let (a, b) = (piece.segment.derivative(1.0), next.segment.derivative(0.0));
+        let turn = a.cross(b).atan2(a.dot(b));
+        if piece.is_port != next.is_port {
+            seeds.push((corner, far * settings.port_corner, settings.corner_growth));
+        } else if turn < -REENTRANT_TURN {
+            seeds.push((
+                corner,
+                far * settings.reentrant_corner,
+                settings.corner_growth,
+            ));
+        }
+    }
+}
+
+/// Cells are never asked smaller than this part of the far size: a guard against sizes of zero.
+const SMALLEST_SIZE: f64 = 1e-6;
 /// A corner that turns right by more than this is re-entrant, rad: less is a kink that needs no grading.
 const REENTRANT_TURN: f64 = 0.2;
 /// A gap makes cells no smaller than this part of what the other rules ask.

@@ -4,11 +4,12 @@
 
 use super::MeshSettings;
 use super::error::MeshError;
+use super::rim::{Inside, Rim};
+use super::search::Crowd;
 use super::sizing::Sizing;
 use super::tri_mesh::{BoundaryEdge, TriMesh};
 use crate::base::{Vec2, Watch};
-use crate::geometry::contour::distance_to_chord;
-use crate::geometry::{BoundaryTag, Domain};
+use crate::geometry::Domain;
 use spade::{ConstrainedDelaunayTriangulation, Point2, Triangulation};
 use std::collections::{BTreeMap, BinaryHeap};
 
@@ -18,16 +19,6 @@ const CLOSEST: f64 = 0.72;
 const FROM_BOUNDARY: f64 = 0.55;
 /// Smoothing sweeps; more give nothing.
 const SWEEPS: usize = 8;
-/// Steps of the arc-length quadrature for the boundary points.
-const ARC_STEPS: usize = 400;
-
-/// Boundary points and edges before triangulation.
-struct Rim {
-    points: Vec<Vec2>,
-    /// (from, to, tag, parameters)
-    edges: Vec<(u32, u32, BoundaryTag, [f64; 2])>,
-}
-
 /// The straight-sided mesh.
 ///
 /// # Errors
@@ -38,12 +29,12 @@ pub fn triangulate(
     watch: &Watch,
 ) -> Result<TriMesh, MeshError> {
     let sizing = Sizing::new(domain, settings);
-    let rim = rim(domain, &sizing);
+    let rim = Rim::new(domain, &sizing, settings)?;
     if rim.points.iter().any(|p| !p.is_finite()) {
         return Err(MeshError::Empty);
     }
     let inside = Inside::new(domain, &rim);
-    predict(&inside, &sizing, settings)?;
+    predict(&rim, &inside, &sizing, settings)?;
     let mut interior = front(&rim, &inside, &sizing, settings, watch)?;
     let mut triangles = connect(&rim, &interior, &inside)?;
     for _ in 0..SWEEPS {
@@ -55,139 +46,14 @@ pub fn triangulate(
     build(rim, interior, triangles)
 }
 
-fn tags(domain: &Domain) -> Vec<BoundaryTag> {
-    let pieces = (0..domain.outline.pieces.len()).map(|i| BoundaryTag::Piece(i as u32));
-    pieces
-        .chain((0..domain.inserts.len()).map(|i| BoundaryTag::Insert(i as u32)))
-        .collect()
-}
-
-/// Parameters of the points along a curve, both ends included.
-fn parameters(domain: &Domain, tag: BoundaryTag, sizing: &Sizing) -> Vec<f64> {
-    let curve = domain.curve(tag);
-    let mut sums = vec![0.0];
-    for i in 0..ARC_STEPS {
-        let t = (i as f64 + 0.5) / ARC_STEPS as f64;
-        let rate = curve.derivative(t).norm() / sizing.at(curve.point(t));
-        sums.push(sums[i] + rate / ARC_STEPS as f64);
-    }
-    let total = sums[ARC_STEPS];
-    let fewest = if matches!(tag, BoundaryTag::Insert(_)) {
-        8
-    } else {
-        1
-    };
-    let count = (total.ceil() as usize).max(fewest);
-    (0..=count)
-        .map(|i| {
-            if i == 0 || i == count {
-                return if i == 0 { 0.0 } else { 1.0 };
-            }
-            let wanted = total * i as f64 / count as f64;
-            let k = sums.partition_point(|&s| s <= wanted).clamp(1, ARC_STEPS);
-            ((k - 1) as f64 + (wanted - sums[k - 1]) / (sums[k] - sums[k - 1])) / ARC_STEPS as f64
-        })
-        .collect()
-}
-
-fn rim(domain: &Domain, sizing: &Sizing) -> Rim {
-    let mut rim = Rim {
-        points: Vec::new(),
-        edges: Vec::new(),
-    };
-    let pieces = domain.outline.pieces.len();
-    for tag in tags(domain) {
-        let t = parameters(domain, tag, sizing);
-        let first = rim.points.len() as u32;
-        let spans = t.len() - 1;
-        rim.points
-            .extend(t[..spans].iter().map(|&t| domain.point(tag, t)));
-        for i in 0..spans {
-            let closes = i + 1 == spans;
-            let to = match tag {
-                BoundaryTag::Piece(p) if closes && p as usize + 1 == pieces => 0,
-                BoundaryTag::Insert(_) if closes => first,
-                _ => first + i as u32 + 1,
-            };
-            rim.edges
-                .push((first + i as u32, to, tag, [t[i], t[i + 1]]));
-        }
-    }
-    rim
-}
-
-/// Which region a place is in, by the rim's polygons.
-struct Inside {
-    outline: Vec<[Vec2; 2]>,
-    inserts: Vec<(bool, Vec<[Vec2; 2]>)>,
-}
-
-impl Inside {
-    fn new(domain: &Domain, rim: &Rim) -> Self {
-        let chords = |wanted: &dyn Fn(BoundaryTag) -> bool| {
-            rim.edges
-                .iter()
-                .filter(|e| wanted(e.2))
-                .map(|e| [rim.points[e.0 as usize], rim.points[e.1 as usize]])
-                .collect::<Vec<_>>()
-        };
-        let inserts = domain.inserts.iter().enumerate();
-        Self {
-            outline: chords(&|t| matches!(t, BoundaryTag::Piece(_))),
-            inserts: inserts
-                .map(|(i, insert)| {
-                    (
-                        insert.solid,
-                        chords(&|t| t == BoundaryTag::Insert(i as u32)),
-                    )
-                })
-                .collect(),
-        }
-    }
-
-    /// Region of a place: fluid, a meshed solid, or none.
-    fn region(&self, p: Vec2) -> Option<u16> {
-        if !contains(&self.outline, p) {
-            return None;
-        }
-        for (i, (solid, chords)) in self.inserts.iter().enumerate() {
-            if contains(chords, p) {
-                return solid.then_some(i as u16 + 1);
-            }
-        }
-        Some(super::tri_mesh::FLUID)
-    }
-
-    fn clearance(&self, p: Vec2) -> f64 {
-        self.outline
-            .iter()
-            .chain(self.inserts.iter().flat_map(|i| &i.1))
-            .map(|[a, b]| distance_to_chord(p, *a, *b))
-            .fold(f64::INFINITY, f64::min)
-    }
-}
-
-/// Even-odd rule.
-fn contains(chords: &[[Vec2; 2]], p: Vec2) -> bool {
-    let crossings = chords.iter().filter(|[a, b]| {
-        (a.y > p.y) != (b.y > p.y) && p.x < a.x + (p.y - a.y) / (b.y - a.y) * (b.x - a.x)
-    });
-    crossings.count() % 2 == 1
-}
-
 /// Refuse before any work: an ideal triangle of side h has area 0.433 h^2.
-fn predict(inside: &Inside, sizing: &Sizing, settings: &MeshSettings) -> Result<(), MeshError> {
-    let (mut low, mut high) = (inside.outline[0][0], inside.outline[0][0]);
-    for [a, _] in &inside.outline {
-        low = Vec2 {
-            x: low.x.min(a.x),
-            y: low.y.min(a.y),
-        };
-        high = Vec2 {
-            x: high.x.max(a.x),
-            y: high.y.max(a.y),
-        };
-    }
+fn predict(
+    rim: &Rim,
+    inside: &Inside,
+    sizing: &Sizing,
+    settings: &MeshSettings,
+) -> Result<(), MeshError> {
+    let [low, high] = rim.bounds();
     let box_area = (high.x - low.x) * (high.y - low.y);
     if !(box_area > 0.0 && box_area.is_finite()) {
         return Err(MeshError::Empty);
@@ -205,7 +71,7 @@ fn predict(inside: &Inside, sizing: &Sizing, settings: &MeshSettings) -> Result<
             }
         }
     }
-    let predicted = predicted as usize + inside.outline.len();
+    let predicted = predicted as usize + inside.outline.all().len();
     if predicted > settings.most_triangles {
         return Err(MeshError::Budget {
             predicted,
@@ -268,6 +134,10 @@ fn front(
             push(&mut heap, middle + (b - a).left() * (apex * side));
         }
     }
+    let mut crowd = Crowd::new(rim.bounds());
+    for &p in &rim.points {
+        crowd.add(p);
+    }
     let mut interior: Vec<Vec2> = Vec::new();
     let mut looked = 0usize;
     while let Some(Candidate { size, place, .. }) = heap.pop() {
@@ -275,15 +145,14 @@ fn front(
         if looked.is_multiple_of(1000) {
             watch.check()?;
         }
-        let far = |q: &Vec2| q.distance(place) >= CLOSEST * size;
         if inside.region(place).is_none()
-            || !interior.iter().all(far)
-            || !rim.points.iter().all(far)
-            || inside.clearance(place) < FROM_BOUNDARY * size
+            || !crowd.all_at_least(place, CLOSEST * size)
+            || inside.clearance(place, size) < FROM_BOUNDARY * size
         {
             continue;
         }
         interior.push(place);
+        crowd.add(place);
         if interior.len() > settings.most_triangles {
             return Err(MeshError::Budget {
                 predicted: 2 * interior.len(),
@@ -392,7 +261,8 @@ fn smooth(
     }
     for (p, (sum, weight)) in interior.iter_mut().zip(sums) {
         let moved = sum / weight;
-        if moved.is_finite() && inside.clearance(moved) > 0.3 * sizing.at(moved) {
+        let size = sizing.at(moved);
+        if moved.is_finite() && inside.clearance(moved, size) > 0.3 * size {
             *p = moved;
         }
     }
