@@ -39,6 +39,30 @@ impl Linearised {
     /// # Errors
     /// A singular interior or system, or the watch's stop.
     pub fn new(layout: &Arc<Layout>, matrices: Vec<f64>, watch: &Watch) -> Result<Self, FemError> {
+        let (skeleton, interiors) = Self::condense(layout, &matrices, watch)?;
+        let factor = layout.symbolic.factor(&skeleton)?;
+        watch.check()?;
+        Ok(Self {
+            layout: layout.clone(),
+            matrices,
+            interiors,
+            factor,
+        })
+    }
+
+    /// The condensed matrix that is factorised, scaled.
+    ///
+    /// # Errors
+    /// A singular interior, or the watch's stop.
+    pub fn skeleton(&self, watch: &Watch) -> Result<Sparse, FemError> {
+        Ok(Self::condense(&self.layout, &self.matrices, watch)?.0)
+    }
+
+    fn condense(
+        layout: &Layout,
+        matrices: &[f64],
+        watch: &Watch,
+    ) -> Result<(Sparse, Vec<Interior>), FemError> {
         let (local, outer) = (layout.local, layout.outer);
         let inner = local - outer;
         let mut values = vec![0.0; layout.pattern.nonzeros()];
@@ -80,17 +104,8 @@ impl Linearised {
             interiors.push(interior);
         }
         watch.check()?;
-        let factor = layout.symbolic.factor(&Sparse {
-            pattern: layout.pattern.clone(),
-            values,
-        })?;
-        watch.check()?;
-        Ok(Self {
-            layout: layout.clone(),
-            matrices,
-            interiors,
-            factor,
-        })
+        let pattern = layout.pattern.clone();
+        Ok((Sparse { pattern, values }, interiors))
     }
 
     /// Solve `A x = r` with zero at fixed unknowns; `r` and the result have shape `(total,)`.

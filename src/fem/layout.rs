@@ -1,6 +1,7 @@
 //! Which unknowns an element has, which of them are condensed or fixed, and the pattern that remains.
 
-use crate::linalg::{Direct, LinalgError, Pattern, Symbolic};
+use crate::linalg::{LinalgError, Multifrontal, Pattern, Role, Symbolic, Unknowns};
+use std::collections::BTreeMap;
 use std::sync::Arc;
 
 /// Marks an unknown that is not in the global system (fixed, unused or condensed).
@@ -33,12 +34,13 @@ pub struct Layout {
     pub(super) pattern: Arc<Pattern>,
     /// Where each entry `(row, column)` of an element's outer block goes, shape `(elements, outer, outer)`.
     pub(super) positions: Vec<u32>,
+    unknowns: Unknowns,
     /// Analysis of the pattern.
     pub(super) symbolic: Box<dyn Symbolic>,
 }
 
 impl Layout {
-    /// Build pattern and analysis.
+    /// Build pattern and analysis of a system whose diagonal is sound.
     ///
     /// # Errors
     /// [`LinalgError::Memory`] from the analysis.
@@ -49,6 +51,23 @@ impl Layout {
         numbers: Vec<u32>,
         fixed: Vec<bool>,
         scale: Vec<f64>,
+    ) -> Result<Self, LinalgError> {
+        Self::saddle(local, outer, total, numbers, fixed, scale, total)
+    }
+
+    /// Build pattern and analysis of a saddle point: unknowns from `first_constraint` on are constraints (pressures),
+    /// whose diagonal is zero before velocities are eliminated.
+    ///
+    /// # Errors
+    /// [`LinalgError::Memory`] from the analysis.
+    pub fn saddle(
+        local: usize,
+        outer: usize,
+        total: usize,
+        numbers: Vec<u32>,
+        fixed: Vec<bool>,
+        scale: Vec<f64>,
+        first_constraint: usize,
     ) -> Result<Self, LinalgError> {
         let elements = numbers.len() / local;
         let mut row = vec![ABSENT; total];
@@ -66,8 +85,10 @@ impl Layout {
                 unknown.push(n as u32);
             }
         }
-        let (pattern, positions) = couple(&numbers, local, outer, &row, unknown.len());
-        let symbolic = Box::new(Direct::analyse(&pattern)?);
+        let touching = touching(&numbers, local, outer, &row, unknown.len());
+        let unknowns = unknowns(&touching, |row| unknown[row] as usize >= first_constraint);
+        let (pattern, positions) = couple(&numbers, local, outer, &row, &touching);
+        let symbolic = Box::new(Multifrontal::analyse(&pattern, &unknowns)?);
         Ok(Self {
             elements,
             local,
@@ -80,8 +101,14 @@ impl Layout {
             unknown,
             pattern: Arc::new(pattern),
             positions,
+            unknowns,
             symbolic,
         })
+    }
+
+    /// What the order of elimination knows of the condensed system: its groups and roles.
+    pub fn unknowns(&self) -> &Unknowns {
+        &self.unknowns
     }
 
     /// Unknowns of the condensed system.
@@ -95,28 +122,64 @@ impl Layout {
     }
 }
 
+/// Elements around each row of the condensed system, with the row's place among their unknowns.
+fn touching(
+    numbers: &[u32],
+    local: usize,
+    outer: usize,
+    row: &[u32],
+    size: usize,
+) -> Vec<Vec<(u32, u32)>> {
+    let mut touching: Vec<Vec<(u32, u32)>> = vec![Vec::new(); size];
+    for (e, element) in numbers.chunks(local).enumerate() {
+        for (i, &n) in element[..outer].iter().enumerate() {
+            let r = row[n as usize];
+            if r != ABSENT {
+                touching[r as usize].push((e as u32, i as u32));
+            }
+        }
+    }
+    touching
+}
+
+/// Rows that sit in the same elements form a group (an edge's unknowns; a vertex). Unknowns of edges sit in two
+/// elements at most and fill the constraints' diagonal: those of vertices are orthogonal, or nearly so, to the
+/// gradients of the vertex's own pressure.
+fn unknowns(touching: &[Vec<(u32, u32)>], is_constraint: impl Fn(usize) -> bool) -> Unknowns {
+    let mut number: BTreeMap<Vec<u32>, u32> = BTreeMap::new();
+    let mut unknowns = Unknowns {
+        group: Vec::with_capacity(touching.len()),
+        role: Vec::with_capacity(touching.len()),
+    };
+    for (row, elements) in touching.iter().enumerate() {
+        let around: Vec<u32> = elements.iter().map(|&(e, _)| e).collect();
+        let next = number.len() as u32;
+        unknowns.group.push(*number.entry(around).or_insert(next));
+        unknowns.role.push(if is_constraint(row) {
+            Role::Constraint
+        } else if elements.len() <= 2 {
+            Role::Filling
+        } else {
+            Role::Plain
+        });
+    }
+    unknowns
+}
+
 /// Pattern of the coupling through elements, and where each element entry goes.
 fn couple(
     numbers: &[u32],
     local: usize,
     outer: usize,
     row: &[u32],
-    size: usize,
+    touching: &[Vec<(u32, u32)>],
 ) -> (Pattern, Vec<u32>) {
-    let elements = numbers.len() / local;
+    let (elements, size) = (numbers.len() / local, touching.len());
     let rows_of = |e: usize| {
         numbers[e * local..e * local + outer]
             .iter()
             .map(|&n| row[n as usize])
     };
-    let mut touching: Vec<Vec<(u32, u32)>> = vec![Vec::new(); size];
-    for e in 0..elements {
-        for (i, r) in rows_of(e).enumerate() {
-            if r != ABSENT {
-                touching[r as usize].push((e as u32, i as u32));
-            }
-        }
-    }
     let mut positions = vec![ABSENT; elements * outer * outer];
     let mut column_starts = vec![0; size + 1];
     let mut rows: Vec<usize> = Vec::new();

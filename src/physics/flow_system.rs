@@ -116,7 +116,15 @@ impl FlowSystem {
             }
             numbers.extend(element);
         }
-        let layout = Layout::new(locals.count, locals.outer, total, numbers, fixed, scale)?;
+        let layout = Layout::saddle(
+            locals.count,
+            locals.outer,
+            total,
+            numbers,
+            fixed,
+            scale,
+            2 * nodes,
+        )?;
         let ports = conditions
             .iter()
             .enumerate()
