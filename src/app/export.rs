@@ -67,7 +67,9 @@ pub fn picture(studio: &mut Studio, path: &Path) -> Result<String, String> {
 
 /// Write the history of the last run.
 pub fn history(studio: &mut Studio, path: &Path) -> Result<String, String> {
-    let text = table::history_csv(&studio.project.design.aim, &studio.link.steps);
+    let run = studio.link.run_case.as_ref();
+    let aim = run.map_or(&studio.project.design.aim, |c| &c.design.aim);
+    let text = table::history_csv(aim, &studio.link.steps);
     write_whole(path, text.as_bytes()).map_err(|e| e.to_string())?;
     Ok(format!("Wrote the history to {}.", path.display()))
 }

@@ -213,9 +213,15 @@ fn figures_panel(studio: &mut Studio, ui: &mut Ui, units: Units) {
             egui::CollapsingHeader::new("Aim and limits")
                 .default_open(true)
                 .show(ui, |ui| {
+                    // Slacks of a step belong to the limits its run had.
+                    let same = studio
+                        .link
+                        .run_case
+                        .as_ref()
+                        .is_some_and(|c| c.design.limits == studio.project.design.limits);
                     let limits = of_step
                         .as_ref()
-                        .map(|s| s.limits.clone())
+                        .map(|s| if same { s.limits.clone() } else { Vec::new() })
                         .or_else(|| solved.as_ref().map(|s| s.limits.clone()));
                     let editable = !studio.link.is_improving();
                     let edits = ui
@@ -236,7 +242,7 @@ fn figures_panel(studio: &mut Studio, ui: &mut Ui, units: Units) {
             egui::CollapsingHeader::new("Cautions")
                 .default_open(true)
                 .show(ui, |ui| {
-                    let failure = studio.link.failure.as_ref().map(ToString::to_string);
+                    let failure = studio.link.failure_of(&case).map(ToString::to_string);
                     let list = report.map_or(&[][..], |r| &r.cautions);
                     cautions::show(
                         ui,
@@ -292,7 +298,16 @@ fn variants(studio: &mut Studio, ui: &mut Ui) {
         });
     }
     if let Some(i) = remove {
-        studio.project.variants.remove(i);
+        studio.forget_variant(i);
+    }
+    if let Some(name) = &studio.compared
+        && studio.variant_figures(name).is_none()
+    {
+        ui.weak(if studio.unsolvable.contains(name) {
+            "This variant cannot be solved under the present conditions."
+        } else {
+            "The figures of this variant are being computed."
+        });
     }
 }
 
@@ -301,7 +316,11 @@ fn plot_panel(studio: &mut Studio, ui: &mut Ui, units: Units) {
     let shot = record
         .and_then(|r| r.snapshot.clone())
         .or_else(|| studio.link.solved.as_ref().map(|s| s.snapshot.clone()));
-    let aim: Aim = studio.project.design.aim.clone();
+    // A run keeps the aim it was started with, whatever is chosen since.
+    let aim: Aim = match &studio.link.run_case {
+        Some(case) if !studio.link.steps.is_empty() => case.design.aim.clone(),
+        _ => studio.project.design.aim.clone(),
+    };
     let asked = plots::show(
         ui,
         &mut studio.tab,
@@ -312,7 +331,7 @@ fn plot_panel(studio: &mut Studio, ui: &mut Ui, units: Units) {
         units,
     );
     match asked {
-        Some(plots::Asked::Look(step)) => studio.looked_at = step,
+        Some(plots::Asked::Look(step)) => studio.look_at(step),
         Some(plots::Asked::KeepStep(step)) => studio.take_step(step, true),
         Some(plots::Asked::UseStep(step)) => studio.take_step(step, false),
         None => {}

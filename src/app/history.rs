@@ -31,6 +31,11 @@ impl History {
         }
     }
 
+    /// Whether a gesture is in progress.
+    pub fn is_open(&self) -> bool {
+        self.open.is_some()
+    }
+
     /// At the end of a gesture: one entry, unless nothing changed.
     pub fn finish(&mut self, name: String, now: &Kept) {
         if let Some(before) = self.open.take()

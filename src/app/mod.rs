@@ -11,6 +11,8 @@ pub mod history;
 mod link;
 pub mod panels;
 pub mod persist;
+mod session;
+mod steps;
 pub mod studio;
 mod templates;
 pub mod theme;

@@ -77,28 +77,88 @@ fn settings_path() -> Option<PathBuf> {
     Some(base.join("flumeloft").join("settings.json"))
 }
 
-/// Where the session is written while it is not saved: beside the project, or among the settings.
-pub fn autosave_path(project: Option<&Path>) -> Option<PathBuf> {
-    match project {
-        Some(path) => Some(path.with_extension("autosave.json")),
-        None => Some(settings_path()?.with_file_name("unsaved.autosave.json")),
-    }
+/// Sessions kept beside one project, at most: one that is written now, and those that ended before they were saved.
+const MOST_SESSIONS: usize = 9;
+
+/// The unsaved session of one project: where it is written, and what earlier ones left.
+///
+/// Each session writes to a file of its own, so that an earlier one stays until the user has said what is to become of it.
+#[derive(Debug)]
+pub struct Session {
+    own: Option<PathBuf>,
+    /// Files of sessions that ended unsaved, newest first.
+    pub offered: Vec<PathBuf>,
 }
 
-/// Write the session beside the project.
-pub fn autosave(project: &Project, path: Option<&Path>) {
-    if let (Some(to), Ok(text)) = (autosave_path(path), project.to_json()) {
-        if let Some(folder) = to.parent() {
-            let _ = std::fs::create_dir_all(folder);
+impl Session {
+    /// Look for what earlier sessions left beside a project, or among the settings where it has no file yet.
+    pub fn new(project: Option<&Path>) -> Self {
+        let names: Vec<PathBuf> = (1..=MOST_SESSIONS)
+            .filter_map(|k| session_path(project, k))
+            .collect();
+        let mut offered: Vec<PathBuf> = names.iter().filter(|p| p.exists()).cloned().collect();
+        let written = |p: &PathBuf| std::fs::metadata(p).and_then(|m| m.modified()).ok();
+        offered.sort_by_key(|p| std::cmp::Reverse(written(p)));
+        // Where all names are taken the oldest gives way.
+        let free = names.into_iter().find(|p| !p.exists());
+        let own = free.or_else(|| offered.pop());
+        Self { own, offered }
+    }
+
+    /// Write the session; a failure must not disturb the work, and the file before it stays whole.
+    pub fn write(&self, project: &Project) {
+        if let (Some(to), Ok(text)) = (&self.own, project.to_json()) {
+            if let Some(folder) = to.parent() {
+                let _ = std::fs::create_dir_all(folder);
+            }
+            let _ = crate::study::file::write_whole(to, text.as_bytes());
         }
-        let _ = std::fs::write(to, text);
+    }
+
+    /// Whether the file of this session is there.
+    pub fn is_written(&self) -> bool {
+        self.own.as_ref().is_some_and(|p| p.exists())
+    }
+
+    /// The session is saved: its own file goes.
+    pub fn forget(&self) {
+        if let Some(file) = &self.own {
+            remove(file);
+        }
     }
 }
 
-/// Forget the session file, once saved.
-pub fn forget_autosave(path: Option<&Path>) {
-    if let Some(file) = autosave_path(path) {
-        let _ = std::fs::remove_file(file);
+fn session_path(project: Option<&Path>, number: usize) -> Option<PathBuf> {
+    let ending = match number {
+        1 => "autosave.json".to_owned(),
+        k => format!("autosave-{k}.json"),
+    };
+    match project {
+        Some(path) => Some(path.with_extension(ending)),
+        None => Some(settings_path()?.with_file_name(format!("unsaved.{ending}"))),
+    }
+}
+
+/// Remove a file; one that is not there is as good as removed.
+pub fn remove(file: &Path) {
+    let _ = std::fs::remove_file(file);
+}
+
+/// How long ago a file was written, in words.
+pub fn age_words(file: &Path) -> String {
+    let age = std::fs::metadata(file)
+        .and_then(|m| m.modified())
+        .ok()
+        .and_then(|t| t.elapsed().ok());
+    let Some(minutes) = age.map(|a| a.as_secs() / 60) else {
+        return "at an unknown time".into();
+    };
+    match minutes {
+        0 => "less than a minute ago".into(),
+        1 => "a minute ago".into(),
+        2..=119 => format!("{minutes} minutes ago"),
+        120..=2879 => format!("{} hours ago", minutes / 60),
+        _ => format!("{} days ago", minutes / 1440),
     }
 }
 
@@ -135,7 +195,8 @@ impl Purpose {
         }
     }
 
-    fn reads(self) -> bool {
+    /// Whether the file is read, not written.
+    pub fn reads(self) -> bool {
         matches!(self, Self::Open | Self::Import)
     }
 }
@@ -146,6 +207,8 @@ pub struct PathQuestion {
     pub purpose: Purpose,
     /// Path as typed.
     pub text: String,
+    /// A file of this name is there: the question is now whether to replace it.
+    pub replaces: bool,
     answer: Option<Receiver<Option<PathBuf>>>,
 }
 
@@ -155,6 +218,7 @@ impl PathQuestion {
         Self {
             purpose,
             text: proposal.to_string_lossy().into_owned(),
+            replaces: false,
             answer: None,
         }
     }

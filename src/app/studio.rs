@@ -1,18 +1,19 @@
 //! The studio: its state, what a frame does, and the dispatcher, which alone changes the design.
+//! Files are in [`super::session`], steps and variants in [`super::steps`].
 
 use super::canvas::{self, CanvasState};
 use super::command::{Availability, Command};
 use super::edits;
 use super::history::{History, Kept};
 use super::link::{Link, News};
-use super::persist::{self, PathQuestion, Purpose, Settings};
+use super::persist::{PathQuestion, Purpose, Session, Settings};
 use super::words::{Edit, FieldChoice, Gesture, Mark, Selection, ViewOptions};
 use super::{log, panels, theme};
 use crate::base::Vec2;
 use crate::geometry::{InsertMeasures, insert_measures};
-use crate::study::{Case, Design, Improved, Project, SolveReport, Variant};
+use crate::study::{Case, Design, Project, SolveReport};
 use panels::plots::Tab;
-use std::path::{Path, PathBuf};
+use std::path::PathBuf;
 use std::sync::Arc;
 use std::time::{Duration, Instant};
 
@@ -34,7 +35,7 @@ pub(super) struct Geometry {
 /// Everything the window holds.
 pub struct Studio {
     pub(super) project: Project,
-    saved: Project,
+    pub(super) saved: Project,
     pub(super) path: Option<PathBuf>,
     pub(super) selection: Selection,
     pub(super) history: History,
@@ -47,6 +48,8 @@ pub struct Studio {
     pub(super) looked_at: Option<usize>,
     /// Reports of kept variants, by name.
     pub(super) kept: Vec<(String, Arc<SolveReport>)>,
+    /// Variants that could not be solved.
+    pub(super) unsolvable: Vec<String>,
     /// Variant that figures are compared with.
     pub(super) compared: Option<String>,
     pub(super) tab: Tab,
@@ -55,15 +58,16 @@ pub struct Studio {
     pub(super) keys_shown: bool,
     /// Last thing worth telling.
     pub(super) message: Option<(String, bool)>,
-    pub(super) recovery: Option<PathBuf>,
+    /// Where the unsaved session is written, and what earlier ones left.
+    pub(super) session: Session,
     pub(super) export_mm: bool,
     pub(super) chord_text: String,
     pub(super) probe: Option<String>,
     /// Path for a picture of the window, and frames to wait until the question is gone.
     pub(super) snap: Option<(PathBuf, u32)>,
-    unsaved_since: Option<Instant>,
+    pub(super) unsaved_since: Option<Instant>,
     handle_told: Option<egui::Pos2>,
-    autosaved: Option<Project>,
+    pub(super) autosaved: Option<Project>,
     applied_theme: Option<(bool, u32)>,
 }
 
@@ -75,7 +79,7 @@ impl Studio {
         settings: Settings,
         wake: impl Fn() + Send + Sync + 'static,
     ) -> Self {
-        let recovery = persist::autosave_path(path.as_deref()).filter(|p| p.exists());
+        let session = Session::new(path.as_deref());
         let selection = if project.design.inserts.is_empty() {
             Selection::Nothing
         } else {
@@ -94,13 +98,14 @@ impl Studio {
             geometry: Geometry::default(),
             looked_at: None,
             kept: Vec::new(),
+            unsolvable: Vec::new(),
             compared: None,
             tab: Tab::default(),
             question: None,
             finder: None,
             keys_shown: false,
             message: None,
-            recovery,
+            session,
             export_mm: true,
             chord_text: "0.005 mm".into(),
             probe: None,
@@ -185,7 +190,8 @@ impl Studio {
         let sound = self.geometry.faults.is_empty() && self.geometry.marks.is_empty();
         if sound {
             let case = self.case();
-            self.link.want(&case);
+            self.link.want(&case, self.history.is_open());
+            self.solve_variants();
         }
         if let Some(question) = &mut self.question {
             question.poll();
@@ -202,15 +208,7 @@ impl Studio {
         }
         for file in ctx.input(|i| i.raw.dropped_files.clone()) {
             let path = file.path().to_path_buf();
-            self.answered(Purpose::Open, &path);
-        }
-    }
-
-    /// Write the session if it changed since the last time.
-    pub fn autosave(&mut self) {
-        if self.is_dirty() && self.autosaved.as_ref() != Some(&self.project) {
-            persist::autosave(&self.project, self.path.as_deref());
-            self.autosaved = Some(self.project.clone());
+            self.dropped(&path);
         }
     }
 
@@ -221,6 +219,8 @@ impl Studio {
                 "solved heat={:.6e} drop={:.6e} flow={:.6e}",
                 report.heat_w_m, report.total_pressure_drop_pa, report.flow_rate_m2_s
             )),
+            News::Aside(name, Some(report)) => self.kept.push((name, report)),
+            News::Aside(name, None) => self.unsolvable.push(name),
             News::Step(k) => {
                 let step = &self.link.steps[k];
                 log(&format!(
@@ -234,41 +234,6 @@ impl Studio {
                 self.message = Some((sentence, true));
             }
         }
-    }
-
-    fn finished(&mut self, improved: &Improved) {
-        let before = Kept {
-            design: self.project.design.clone(),
-            run: self.project.run.clone(),
-        };
-        self.history.begin(&before);
-        self.project.design = (*improved.best.case.design).clone();
-        let after = Kept {
-            design: self.project.design.clone(),
-            run: self.project.run.clone(),
-        };
-        self.history.finish("improve".into(), &after);
-        self.looked_at = None;
-        let (start, best) = (improved.start.aim_value, improved.best.aim_value);
-        let change = if start != 0.0 {
-            100.0 * (best / start - 1.0)
-        } else {
-            0.0
-        };
-        let text = format!(
-            "{}: {change:+.1} % after {} steps and {} states. {}",
-            self.project.design.aim.words(),
-            improved.steps,
-            improved.evaluations,
-            improved.stop_sentence
-        );
-        log(&format!("finished aim={best:.6e} change={change:.3}"));
-        self.keep(
-            "before improving",
-            improved.start.case.design.inserts.clone(),
-            Some(improved.start.report.clone()),
-        );
-        self.message = Some((text, false));
     }
 
     fn update_geometry(&mut self) {
@@ -432,171 +397,6 @@ impl Studio {
         ctx.request_repaint();
     }
 
-    fn ask(&mut self, purpose: Purpose, name: &str) {
-        let folder = self
-            .path
-            .as_deref()
-            .and_then(Path::parent)
-            .map_or_else(PathBuf::new, Path::to_path_buf);
-        let proposal = match (purpose, &self.path) {
-            (Purpose::SaveAs, Some(path)) => path.clone(),
-            _ => folder.join(name),
-        };
-        self.question = Some(PathQuestion::new(purpose, &proposal));
-    }
-
-    /// Keep inserts as a variant under a free name.
-    pub(super) fn keep(
-        &mut self,
-        stem: &str,
-        inserts: Vec<crate::study::Insert>,
-        report: Option<SolveReport>,
-    ) {
-        let taken = |n: &str| self.project.variants.iter().any(|v| v.name == n);
-        let name = (1..)
-            .map(|i| {
-                if i == 1 && stem != "variant" {
-                    stem.to_owned()
-                } else {
-                    format!("{stem} {i}")
-                }
-            })
-            .find(|n| !taken(n))
-            .unwrap_or_default();
-        self.project.variants.push(Variant {
-            name: name.clone(),
-            inserts,
-        });
-        if let Some(report) = report {
-            self.kept.push((name.clone(), Arc::new(report)));
-            self.compared = Some(name.clone());
-        }
-        self.message = Some((format!("Kept as \"{name}\"."), false));
-    }
-
-    /// Take a step of the last run as design or as variant.
-    pub(super) fn take_step(&mut self, step: usize, as_variant: bool) {
-        let Some(record) = self.link.steps.get(step).cloned() else {
-            return;
-        };
-        let mut design = self.project.design.clone();
-        for (insert, points) in design.inserts.iter_mut().zip(&record.inserts_m) {
-            insert.points_m.clone_from(points);
-        }
-        if as_variant {
-            self.keep(
-                &format!("step {}", record.step),
-                design.inserts,
-                record.report.map(|r| (*r).clone()),
-            );
-        } else {
-            self.edit_whole(Edit::Replace {
-                to: Box::new(design),
-                name: format!("take step {}", record.step),
-            });
-        }
-    }
-
-    /// A path was given.
-    pub fn answered(&mut self, purpose: Purpose, path: &Path) {
-        let result = self.file(purpose, path);
-        match result {
-            Ok(text) => {
-                log(&format!(
-                    "{} {}",
-                    if matches!(purpose, Purpose::Open | Purpose::Import) {
-                        "read"
-                    } else {
-                        "exported"
-                    },
-                    path.display()
-                ));
-                self.message = Some((text, false));
-                self.question = None;
-            }
-            Err(sentence) => {
-                log(&format!("failed {sentence}"));
-                self.message = Some((sentence, true));
-            }
-        }
-    }
-
-    fn file(&mut self, purpose: Purpose, path: &Path) -> Result<String, String> {
-        match purpose {
-            Purpose::Open => {
-                let project = Project::load(path).map_err(|e| e.to_string())?;
-                self.open(project, Some(path.to_path_buf()));
-                Ok(format!("Opened {}.", path.display()))
-            }
-            Purpose::SaveAs => {
-                self.project.save(path).map_err(|e| e.to_string())?;
-                persist::forget_autosave(self.path.as_deref());
-                self.path = Some(path.to_path_buf());
-                self.saved = self.project.clone();
-                self.settings.remember(path);
-                self.settings.save();
-                Ok(format!("Saved {}.", path.display()))
-            }
-            Purpose::Contour => super::export::contour(self, path),
-            Purpose::Picture => super::export::picture(self, path),
-            Purpose::History => super::export::history(self, path),
-            Purpose::Import => super::export::import(self, path),
-            Purpose::Window => {
-                self.snap = Some((path.to_path_buf(), 2));
-                Ok("The picture of the window is being written.".into())
-            }
-        }
-    }
-
-    /// Replace everything by another project.
-    pub fn open(&mut self, project: Project, path: Option<PathBuf>) {
-        if self.link.is_improving() {
-            self.message = Some((
-                "An improvement is running: stop it before opening another project.".into(),
-                true,
-            ));
-            return;
-        }
-        if let Some(path) = &path {
-            self.settings.remember(path);
-            self.settings.save();
-        }
-        self.autosave();
-        self.selection = if project.design.inserts.is_empty() {
-            Selection::Nothing
-        } else {
-            Selection::Insert(0)
-        };
-        self.saved = project.clone();
-        self.project = project;
-        self.path = path;
-        self.history = History::default();
-        self.link.steps.clear();
-        self.link.improved = None;
-        self.kept.clear();
-        self.compared = None;
-        self.looked_at = None;
-        self.canvas.fit_asked = true;
-        self.recovery = persist::autosave_path(self.path.as_deref()).filter(|p| p.exists());
-    }
-
-    /// Take the session that was written before the last end.
-    pub(super) fn recover(&mut self) {
-        if let Some(file) = self.recovery.take() {
-            match Project::load(&file) {
-                Ok(project) => {
-                    let path = self.path.clone();
-                    let saved = self.saved.clone();
-                    self.open(project, path);
-                    self.saved = saved;
-                    self.recovery = None;
-                    self.message = Some(("The unsaved session was taken up again.".into(), false));
-                }
-                Err(error) => self.message = Some((error.to_string(), true)),
-            }
-        }
-    }
-
     pub(super) fn refit(&mut self) {
         self.canvas.fit_asked = true;
     }
@@ -632,22 +432,10 @@ impl Studio {
             self.looked_at
         };
         let record = watched.and_then(|k| self.link.steps.get(k));
-        let shown = record.map(|r| {
-            let mut design = self.project.design.clone();
-            for (insert, points) in design.inserts.iter_mut().zip(&r.inserts_m) {
-                insert.points_m.clone_from(points);
-            }
-            design
-        });
+        let shown = watched.and_then(|k| self.design_at(k));
         let last =
             watched.or_else(|| (!self.link.steps.is_empty()).then_some(self.link.steps.len()));
-        let ghosts: Vec<Vec<Vec<Vec2>>> = last.map_or(Vec::new(), |last| {
-            self.link.steps[..last.min(self.link.steps.len())]
-                .iter()
-                .filter(|s| s.accepted)
-                .map(|s| s.inserts_m.clone())
-                .collect()
-        });
+        let ghosts = last.map_or(Vec::new(), |last| self.ghosts(last));
         let show_ghosts = improving
             || self.looked_at.is_some()
             || self

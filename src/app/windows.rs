@@ -2,7 +2,7 @@
 
 use super::bar::command_button;
 use super::command::Command;
-use super::persist::Purpose;
+use super::persist::{Purpose, age_words};
 use super::studio::Studio;
 use egui::Ui;
 use std::path::PathBuf;
@@ -48,7 +48,7 @@ pub(super) fn windows(studio: &mut Studio, ui: &mut Ui) {
                         (
                             "Arrows",
                             "Nudge",
-                            "Move the selected thing by a screen point, ten with Shift",
+                            "Move the selected thing by a screen point, ten with Shift, a tenth with Alt",
                         ),
                         ("Esc", "Leave", "Take the drag in progress back"),
                     ] {
@@ -60,19 +60,50 @@ pub(super) fn windows(studio: &mut Studio, ui: &mut Ui) {
                 });
         });
     studio.keys_shown = shown;
-    if studio.recovery.is_some() {
-        egui::Window::new("Unsaved session").collapsible(false).resizable(false).show(&ctx, |ui| {
-            ui.label("The last session ended with changes that were not saved. They were written beside the project.");
+    sessions_window(studio, &ctx);
+}
+
+/// The offer of sessions that ended unsaved. Until it is answered nothing touches their files.
+fn sessions_window(studio: &mut Studio, ctx: &egui::Context) {
+    let files = studio.offered_sessions().to_vec();
+    if files.is_empty() {
+        return;
+    }
+    egui::Window::new("Unsaved session")
+        .collapsible(false)
+        .resizable(false)
+        .show(ctx, |ui| {
+            ui.label("Changes that were never saved are still there.");
+            for (which, file) in files.iter().enumerate() {
+                ui.horizontal(|ui| {
+                    if ui
+                        .button("Take them up again")
+                        .on_hover_text(format!("Go on with {}", file.display()))
+                        .clicked()
+                    {
+                        studio.recover(which);
+                    }
+                    ui.weak(format!("written {}", age_words(file)));
+                });
+            }
+            ui.separator();
             ui.horizontal(|ui| {
-                if ui.button("Take them up again").clicked() {
-                    studio.recover();
+                if ui
+                    .button("Ask again next time")
+                    .on_hover_text("Leave the files where they are")
+                    .clicked()
+                {
+                    studio.postpone_sessions();
                 }
-                if ui.button("Leave them").clicked() {
-                    studio.recovery = None;
+                if ui
+                    .button("Delete them")
+                    .on_hover_text("Delete the unsaved changes for good")
+                    .clicked()
+                {
+                    studio.discard_sessions();
                 }
             });
         });
-    }
 }
 
 fn path_window(studio: &mut Studio, ctx: &egui::Context) {
@@ -85,6 +116,9 @@ fn path_window(studio: &mut Studio, ctx: &egui::Context) {
         ui.horizontal(|ui| {
             let label = ui.label("Path");
             let field = ui.add(egui::TextEdit::singleline(&mut question.text).desired_width(360.0).id_salt("path")).labelled_by(label.id);
+            if field.changed() {
+                question.replaces = false;
+            }
             if !field.has_focus() && !field.lost_focus() && ui.memory(|m| m.focused().is_none()) {
                 field.request_focus();
             }
@@ -96,6 +130,9 @@ fn path_window(studio: &mut Studio, ctx: &egui::Context) {
                 question.browse(move || ctx.request_repaint());
             }
         });
+        if question.replaces {
+            ui.label(egui::RichText::new("A file of this name is there already.").color(ui.visuals().warn_fg_color));
+        }
         if question.purpose == Purpose::Contour {
             ui.horizontal(|ui| {
                 let label = ui.label("Chord tolerance");
@@ -107,7 +144,14 @@ fn path_window(studio: &mut Studio, ctx: &egui::Context) {
             });
         }
         ui.horizontal(|ui| {
-            if ui.button("OK").clicked() {
+            let (word, help) = if question.replaces {
+                ("Replace it", "Write over the file that is there")
+            } else if question.purpose.reads() {
+                ("Open", "Read this file")
+            } else {
+                ("Write", "Write to this path")
+            };
+            if ui.button(word).on_hover_text(help).clicked() {
                 answer = Some(PathBuf::from(question.text.trim()));
             }
             if ui.button("Cancel").clicked() || ui.input(|i| i.key_pressed(egui::Key::Escape)) {
@@ -115,12 +159,14 @@ fn path_window(studio: &mut Studio, ctx: &egui::Context) {
             }
         });
     });
-    let purpose = question.purpose;
+    let (purpose, replaces) = (question.purpose, question.replaces);
     if keep {
         studio.question = Some(question);
     }
-    if let Some(path) = answer {
-        studio.answered(purpose, &path);
+    match answer {
+        Some(path) if replaces => studio.answered(purpose, &path),
+        Some(path) => studio.propose(purpose, &path),
+        None => {}
     }
 }
 

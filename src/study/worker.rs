@@ -100,15 +100,26 @@ impl Worker {
     /// Ask for a run. It takes the place of one that still waits; a running solve is stopped at once and its
     /// result dropped; a running improvement is stopped and still delivers its best shape.
     pub fn submit(&self, request: Request) -> RunId {
+        self.ask(request, true)
+    }
+
+    /// Ask for a run behind the one in progress, which goes on to its end; it takes the place of one that still waits.
+    pub fn queue(&self, request: Request) -> RunId {
+        self.ask(request, false)
+    }
+
+    fn ask(&self, request: Request, at_once: bool) -> RunId {
         let (run, dropped) = {
             let mut orders = self.shared.orders();
             orders.last_run += 1;
             let run = RunId(orders.last_run);
             let dropped = orders.next.replace((run, request));
-            orders.paused = false;
-            if let Some(current) = &mut orders.current {
-                current.superseded = !current.improves;
-                current.watch.stop();
+            if at_once {
+                orders.paused = false;
+                if let Some(current) = &mut orders.current {
+                    current.superseded = !current.improves;
+                    current.watch.stop();
+                }
             }
             (run, dropped)
         };

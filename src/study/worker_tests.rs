@@ -182,6 +182,33 @@ fn a_newer_solve_takes_the_place_of_the_older() {
 }
 
 #[test]
+fn a_queued_solve_lets_the_one_in_progress_finish_and_only_the_newest_waits() {
+    let worker = worker(StandIn {
+        pause: Duration::from_millis(30),
+        ..StandIn::default()
+    });
+    let first = worker.queue(Request::Solve { case: case() });
+    while !matches!(
+        worker.wait(PATIENCE).expect("accepted").event,
+        Event::Accepted
+    ) {}
+    let others: Vec<_> = (0..10)
+        .map(|_| worker.queue(Request::Solve { case: case() }))
+        .collect();
+    let mut solved = Vec::new();
+    let mut ends = 0;
+    while ends < 11 {
+        let message = worker.wait(PATIENCE).expect("ends");
+        ends += usize::from(message.event.is_end());
+        if matches!(message.event, Event::Solved(_)) {
+            solved.push(message.run);
+        }
+    }
+    // The twin with `submit` in place of `queue` loses the first: see the test above.
+    assert_eq!(solved, [first, others[9]]);
+}
+
+#[test]
 fn a_solve_asked_during_an_improvement_waits_for_its_best_shape() {
     let worker = worker(StandIn {
         steps: Some(usize::MAX),

@@ -5,6 +5,7 @@ mod fields;
 mod pick;
 mod shapes;
 mod tool;
+mod typed;
 
 pub use fields::field_of;
 pub use shapes::flow_words;
@@ -81,7 +82,7 @@ pub fn show(ui: &mut Ui, state: &mut CanvasState, input: &CanvasInput) -> Canvas
     if let (Some(shot), Some(c)) = (input.snapshot, cursor) {
         output.probe = probe_words(shot, camera.world_from_screen(rect, c), input);
     }
-    tool::typed_coordinates(ui, state, &camera, rect, input, &mut output);
+    typed::show(ui, state, &camera, rect, input, &mut output);
     tool::menu(&response, state, &camera, rect, input, &mut output);
     output
 }
@@ -172,7 +173,6 @@ fn draw(
             state.fields.streamlines(painter, camera, rect, shot);
         }
     }
-    let design = input.design;
     let is_outlet = |i: usize| is_outlet(input, i);
     pen.duct(input, &is_outlet);
     pen.ghosts(input.ghosts_m);
@@ -185,7 +185,7 @@ fn draw(
         let range = state.fields.range;
         fields::legend(painter, rect, range, colours, input);
     }
-    tool::hint(painter, state, camera, rect, colours, design);
+    tool::hint(painter, state, camera, rect, colours, input);
 }
 
 /// Whether a port lets the flow out, as far as its condition or the solved profile tells.

@@ -16,14 +16,14 @@ use egui::{Align2, FontId, Key, PointerButton, Pos2, Rect, Response, Stroke, Ui}
 #[derive(Clone, Debug, Default)]
 pub struct Tool {
     drag: Option<Drag>,
-    /// Text of the inline coordinate field, when open.
-    typed: Option<String>,
-    /// Whether the field was there in the frame before: the key that opens it does not enter it.
-    typed_open: bool,
+    /// The inline coordinate field, when open.
+    pub(super) typed: Option<super::typed::Typed>,
     /// Place of the context menu's click, m.
     menu_at: Vec2,
     menu_on: Selection,
     snapped: Option<Vec2>,
+    /// Whether an arrow key is held: all it moves is one gesture.
+    nudging: bool,
 }
 
 #[derive(Clone, Debug)]
@@ -35,6 +35,25 @@ struct Drag {
     start: Vec2,
     /// Last edit's end, m.
     last: Vec2,
+}
+
+impl Drag {
+    /// The edit that brings what is dragged to a place.
+    fn edit(&self, to_m: Vec2) -> Option<Edit> {
+        match self.what {
+            Selection::Control { insert, control } => Some(Edit::MoveControl {
+                insert,
+                control,
+                to_m,
+            }),
+            Selection::Corner(piece) => Some(Edit::MoveCorner { piece, to_m }),
+            Selection::Insert(insert) => Some(Edit::MoveInsert {
+                insert,
+                by_m: to_m - self.last,
+            }),
+            _ => None,
+        }
+    }
 }
 
 impl Tool {
@@ -99,19 +118,7 @@ pub fn act(
         if escaped {
             to = drag.start;
         }
-        let edit = match drag.what {
-            Selection::Control { insert, control } => Some(Edit::MoveControl {
-                insert,
-                control,
-                to_m: to,
-            }),
-            Selection::Corner(piece) => Some(Edit::MoveCorner { piece, to_m: to }),
-            Selection::Insert(insert) => Some(Edit::MoveInsert {
-                insert,
-                by_m: to - drag.last,
-            }),
-            _ => None,
-        };
+        let edit = drag.edit(to);
         if let Some(edit) = edit
             && (to != drag.last || finished)
         {
@@ -123,25 +130,16 @@ pub fn act(
             state.tool.snapped = None;
         }
     } else if state.tool.drag.is_some() && cursor.is_none() {
-        // The pointer was lost: end the gesture where it was.
-        if let Some(Drag {
-            what: Selection::Control { insert, control },
-            last,
-            ..
-        }) = state.tool.drag.take()
-        {
-            let edit = Edit::MoveControl {
-                insert,
-                control,
-                to_m: last,
-            };
-            output.gestures.push(Gesture {
-                edit,
-                finished: true,
-            });
-        }
+        // The pointer was lost: end the gesture where it was, whatever is dragged.
+        let edit = state.tool.drag.take().and_then(|d| d.edit(d.last));
+        output.gestures.extend(edit.map(|edit| Gesture {
+            edit,
+            finished: true,
+        }));
+        state.tool.snapped = None;
     }
-    if response.clicked() && output.selection.is_none() {
+    // Not `clicked`: Enter on the focused canvas counts as one, and would select what the pointer happens to be over.
+    if response.clicked_by(PointerButton::Primary) && output.selection.is_none() {
         output.selection = Some(state.hovered.clone());
         response.request_focus();
     }
@@ -154,7 +152,7 @@ pub fn act(
 }
 
 /// Where the thing stands, m.
-fn place_of(design: &Design, what: &Selection) -> Option<Vec2> {
+pub(super) fn place_of(design: &Design, what: &Selection) -> Option<Vec2> {
     match *what {
         Selection::Control { insert, control } => {
             design.inserts.get(insert)?.points_m.get(control).copied()
@@ -324,113 +322,46 @@ fn keys(
         }
         _ => {}
     }
-    let fine = if ui.input(|i| i.modifiers.shift) {
-        10.0
-    } else {
-        1.0
+    let fine = match ui.input(|i| (i.modifiers.shift, i.modifiers.alt)) {
+        (true, _) => 10.0,
+        (_, true) => 0.1,
+        _ => 1.0,
     };
     let step = camera.world_length(1.0) * fine;
     let mut by = Vec2::ZERO;
+    let mut held = false;
     for (key, direction) in [
         (Key::ArrowLeft, vec2(-1.0, 0.0)),
         (Key::ArrowRight, vec2(1.0, 0.0)),
         (Key::ArrowUp, vec2(0.0, 1.0)),
         (Key::ArrowDown, vec2(0.0, -1.0)),
     ] {
+        held |= ui.input(|i| i.key_down(key));
         if pressed(key) {
             by += direction * step;
         }
     }
-    if by != Vec2::ZERO {
-        let edit = match (input.selection, place_of(input.design, input.selection)) {
-            (Selection::Control { insert, control }, Some(p)) => Some(Edit::MoveControl {
-                insert: *insert,
-                control: *control,
-                to_m: p + by,
-            }),
-            (Selection::Corner(piece), Some(p)) => Some(Edit::MoveCorner {
-                piece: *piece,
-                to_m: p + by,
-            }),
-            (Selection::Insert(insert), _) => Some(Edit::MoveInsert {
-                insert: *insert,
-                by_m: by,
-            }),
-            _ => None,
+    if by != Vec2::ZERO || (state.tool.nudging && !held) {
+        let place = place_of(input.design, input.selection).unwrap_or_default();
+        let moved = Drag {
+            what: input.selection.clone(),
+            from: place,
+            start: place,
+            last: place,
         };
-        output.gestures.extend(edit.map(|edit| Gesture {
-            edit,
-            finished: true,
-        }));
+        output
+            .gestures
+            .extend(moved.edit(place + by).map(|edit| Gesture {
+                edit,
+                finished: !held,
+            }));
+        state.tool.nudging = held;
     }
     if pressed(Key::Enter)
         && let Some(p) = place_of(input.design, input.selection)
     {
-        let number =
-            |v| crate::base::units::significant(Kind::Length.number(v, input.inch_based), 6);
-        state.tool.typed = Some(format!("{}; {}", number(p.x), number(p.y)));
+        state.tool.typed = Some(super::typed::Typed::at(p, input.inch_based));
     }
-}
-
-/// The inline field for coordinates at the selected handle.
-pub fn typed_coordinates(
-    ui: &mut Ui,
-    state: &mut CanvasState,
-    camera: &Camera,
-    rect: Rect,
-    input: &CanvasInput,
-    output: &mut CanvasOutput,
-) {
-    let Some(mut text) = state.tool.typed.take() else {
-        state.tool.typed_open = false;
-        return;
-    };
-    let opened = std::mem::replace(&mut state.tool.typed_open, true);
-    let Some(place) = place_of(input.design, input.selection) else {
-        return;
-    };
-    let at = camera.screen_from_world(rect, place) + egui::vec2(12.0, -28.0);
-    let field = Rect::from_min_size(at, egui::vec2(170.0, 22.0));
-    let response = ui
-        .put(
-            field,
-            egui::TextEdit::singleline(&mut text)
-                .hint_text("x; y")
-                .id_salt("typed coordinates"),
-        )
-        .on_hover_text(
-            "Coordinates of the point: x; y with or without units, Enter to set, Escape to leave",
-        );
-    response.request_focus();
-    if ui.input(|i| i.key_pressed(Key::Escape)) {
-        return;
-    }
-    if opened && ui.input(|i| i.key_pressed(Key::Enter)) && text.contains(';') {
-        let parts: Vec<&str> = text.split(';').collect();
-        let value = |s: &str| Kind::Length.parse(s, input.inch_based).ok();
-        if let (Some(x), Some(y)) = (value(parts[0]), parts.get(1).and_then(|s| value(s))) {
-            let to_m = vec2(x, y);
-            let edit = match *input.selection {
-                Selection::Control { insert, control } => Some(Edit::MoveControl {
-                    insert,
-                    control,
-                    to_m,
-                }),
-                Selection::Corner(piece) => Some(Edit::MoveCorner { piece, to_m }),
-                _ => None,
-            };
-            output
-                .gestures
-                .extend(edit.filter(|_| to_m != place).map(|edit| Gesture {
-                    edit,
-                    finished: true,
-                }));
-            if to_m != place {
-                return;
-            }
-        }
-    }
-    state.tool.typed = Some(text);
 }
 
 /// Menu of the thing under a right click.
@@ -561,7 +492,7 @@ pub fn hint(
     camera: &Camera,
     rect: Rect,
     colours: &CanvasColours,
-    design: &Design,
+    input: &CanvasInput,
 ) {
     if let Some(p) = state.tool.snapped {
         let at = camera.screen_from_world(rect, p);
@@ -576,13 +507,13 @@ pub fn hint(
         );
     }
     if let Some(drag) = &state.tool.drag
-        && let Some(p) = place_of(design, &drag.what)
+        && let Some(p) = place_of(input.design, &drag.what)
     {
         let at = camera.screen_from_world(rect, p) + egui::vec2(12.0, 14.0);
         let text = format!(
             "{}; {}",
-            Kind::Length.text(p.x, false),
-            Kind::Length.text(p.y, false)
+            Kind::Length.text(p.x, input.inch_based),
+            Kind::Length.text(p.y, input.inch_based)
         );
         painter.text(
             at,
