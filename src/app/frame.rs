@@ -32,10 +32,16 @@ pub fn draw(studio: &mut Studio, ui: &mut Ui) {
             .show(ui, |ui| sketch_panel(studio, ui, units));
     }
     if studio.settings.figures {
+        // The drawing is the subject: on a small screen the figures take no more than their table.
+        let width = if ui.available_width() < 1000.0 {
+            352.0
+        } else {
+            384.0
+        };
         Panel::right("figures")
             .resizable(true)
-            .default_size(384.0)
-            .min_size(384.0)
+            .default_size(width)
+            .min_size(352.0)
             .show(ui, |ui| figures_panel(studio, ui, units));
     }
     egui::CentralPanel::default()

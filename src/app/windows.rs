@@ -72,6 +72,7 @@ fn sessions_window(studio: &mut Studio, ctx: &egui::Context) {
     egui::Window::new("Unsaved session")
         .collapsible(false)
         .resizable(false)
+        .anchor(egui::Align2::CENTER_TOP, [0.0, 60.0])
         .show(ctx, |ui| {
             ui.label("Changes that were never saved are still there.");
             for (which, file) in files.iter().enumerate() {

@@ -1,6 +1,7 @@
 //! The canvas: duct and inserts to scale under the field, with handles to shape them.
 
 mod camera;
+mod clip;
 mod fields;
 mod pick;
 mod shapes;

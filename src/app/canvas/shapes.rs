@@ -1,6 +1,7 @@
 //! The drawing: duct, ports, inserts, handles, ghosts, dimensions, rulers and marks.
 
 use super::camera::Camera;
+use super::clip::dashed;
 use crate::app::theme::{ACCENT, CanvasColours};
 use crate::app::words::{CanvasInput, Selection};
 use crate::base::units::{Kind, significant};
@@ -156,12 +157,12 @@ impl Pen<'_> {
                     ));
                 }
                 FlowCondition::Symmetry {} => {
-                    self.painter.extend(Shape::dashed_line_with_offset(
+                    self.painter.extend(dashed(
                         &points,
+                        self.painter.clip_rect(),
                         Stroke::new(if selected { 2.6 } else { 1.4 }, colour),
                         &[12.0, 2.0],
                         &[4.0, 4.0],
-                        0.0,
                     ));
                 }
                 _ => self.port(input, i, &segment, &points, selected, reversed(i)),
@@ -188,11 +189,12 @@ impl Pen<'_> {
         out: bool,
     ) {
         let colour = if selected { ACCENT } else { self.colours.port };
-        self.painter.extend(Shape::dashed_line(
+        self.painter.extend(dashed(
             points,
+            self.painter.clip_rect(),
             Stroke::new(if selected { 2.6 } else { 1.6 }, colour),
-            6.0,
-            4.0,
+            &[6.0],
+            &[4.0],
         ));
         // Arrows across the port, outside the duct.
         for s in [0.25, 0.5, 0.75] {
@@ -269,8 +271,13 @@ impl Pen<'_> {
             for points in step.iter().filter(|p| p.len() >= 4) {
                 let line = self.contour_points(&ClosedSpline::new(points.clone()));
                 if first {
-                    self.painter
-                        .extend(Shape::dashed_line(&line, stroke, 5.0, 4.0));
+                    self.painter.extend(dashed(
+                        &line,
+                        self.painter.clip_rect(),
+                        stroke,
+                        &[5.0],
+                        &[4.0],
+                    ));
                 } else {
                     self.painter.add(Shape::line(line, stroke));
                 }

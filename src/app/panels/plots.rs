@@ -178,14 +178,35 @@ fn history(ui: &mut Ui, aim: &Aim, steps: &[StepRecord], looked_at: Option<usize
                     plot.vline(VLine::new("", step.step as f64).color(ACCENT));
                 }
             });
+        slacks(&mut columns[1], &taken);
+    });
+}
+
+/// Colours of the limits' lines, told apart by eye and in grey (after Okabe and Ito's set of 2008, from memory).
+const LINES: [egui::Color32; 7] = [
+    egui::Color32::from_rgb(0, 114, 178),
+    egui::Color32::from_rgb(213, 94, 0),
+    egui::Color32::from_rgb(0, 158, 115),
+    egui::Color32::from_rgb(204, 121, 167),
+    egui::Color32::from_rgb(86, 180, 233),
+    egui::Color32::from_rgb(230, 159, 0),
+    egui::Color32::from_rgb(110, 110, 110),
+];
+
+/// Slack of each limit over its bound through the steps, with the key beside the plot.
+fn slacks(ui: &mut Ui, taken: &[&StepRecord]) {
+    let names: Vec<&str> = taken.last().map_or(Vec::new(), |s| {
+        s.limits.iter().map(|l| l.name.as_str()).collect()
+    });
+    let key = (0.42 * ui.available_width()).min(230.0);
+    let height = ui.available_height();
+    ui.horizontal_top(|ui| {
         Plot::new("slacks")
-            .legend(Legend::default())
             .allow_scroll(false)
+            .width((ui.available_width() - key - 8.0).max(80.0))
+            .height(height)
             .y_axis_formatter(|m, _| format!("{:.0} %", m.value))
-            .show(&mut columns[1], |plot| {
-                let names: Vec<&str> = taken.last().map_or(Vec::new(), |s| {
-                    s.limits.iter().map(|l| l.name.as_str()).collect()
-                });
+            .show(ui, |plot| {
                 for (k, name) in names.iter().enumerate() {
                     // Slack over its bound, cut at 100 %: how near each limit is.
                     let line: Vec<[f64; 2]> = taken
@@ -197,9 +218,30 @@ fn history(ui: &mut Ui, aim: &Aim, steps: &[StepRecord], looked_at: Option<usize
                         })
                         .collect();
                     plot.line(
-                        Line::new(format!("slack: {name}"), PlotPoints::from(line)).width(1.5),
+                        Line::new(*name, PlotPoints::from(line))
+                            .color(LINES[k % LINES.len()])
+                            .width(1.5),
                     );
                 }
+            });
+        egui::ScrollArea::vertical()
+            .id_salt("limits of the plot")
+            .max_height(height)
+            .show(ui, |ui| {
+                ui.vertical(|ui| {
+                    ui.set_width(key);
+                    ui.weak("slack of each limit, in parts of it");
+                    for (k, name) in names.iter().enumerate() {
+                        ui.horizontal(|ui| {
+                            let size = egui::vec2(12.0, 3.0);
+                            let (mark, _) = ui.allocate_exact_size(size, egui::Sense::hover());
+                            ui.painter().rect_filled(mark, 0.0, LINES[k % LINES.len()]);
+                            let text = egui::RichText::new(*name).small();
+                            ui.add(egui::Label::new(text).truncate())
+                                .on_hover_text(*name);
+                        });
+                    }
+                });
             });
     });
 }
